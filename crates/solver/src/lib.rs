@@ -1,10 +1,33 @@
 //! Position, region and verdict from arrival times at antennas.
-
 mod arrivals;
+mod branch_and_bound;
+pub mod closed_form;
+mod combine;
+mod consensus;
+mod covariance;
+mod domain;
+mod error;
+mod fix;
+mod impossible;
+pub mod least_squares;
+pub mod likelihood;
+mod modes;
 mod obstacle;
+mod region;
 mod site;
+mod verdict;
+mod weights;
 
 pub use arrivals::Arrivals;
+pub use combine::{Combined, combine, disagreement};
+pub use consensus::{Consensus, consensus};
+pub use covariance::{Covariance, Ellipse, chi_square_exceedance, chi_square_quantile, covariance};
+pub use error::SolveError;
+pub use fix::{AMBIGUOUS, AntennaFit, Fit, Fix, Flag, locate};
+pub use impossible::{ImpossibleDelay, SLACK_SIGMAS, set_aside};
+pub use modes::Mode;
 pub use nalgebra;
 pub use obstacle::Obstacle;
+pub use region::{Bearing, Region};
 pub use site::{Air, Antenna, Asset, PositionSigma, Priors, SPEED_OF_LIGHT_M_PER_S, SearchBox, Site};
+pub use verdict::{MOST_NAMED, NEARLY_ALL, POOR_FIT, SURE, Statement, Verdict};

@@ -1,0 +1,235 @@
+//! From arrivals to everything that is told about a source: position, region, bearing, fit, verdict, flags.
+
+use nalgebra::Vector3;
+
+use crate::arrivals::Arrivals;
+use crate::branch_and_bound::{Cell, search};
+use crate::closed_form;
+use crate::covariance::{Covariance, Ellipse, chi_square_exceedance, covariance};
+use crate::error::SolveError;
+use crate::impossible::{ImpossibleDelay, set_aside};
+use crate::least_squares::{Ended, Minimum, refine};
+use crate::likelihood::{Evaluator, Likelihood};
+use crate::modes::{self, Mode};
+use crate::region::{self, Bearing, Region};
+use crate::site::Site;
+use crate::verdict::{POOR_FIT, Verdict, verdict};
+
+/// What is told about a source.
+#[derive(Debug, Clone, PartialEq)]
+pub struct Fix {
+    /// Best point of the mode with most posterior mass, in metres.
+    pub position_m: Vector3<f64>,
+    /// How the search for that point ended.
+    pub ended: Ended,
+    /// Covariance about it; none where the geometry leaves a direction undetermined.
+    pub covariance: Option<Covariance>,
+    /// Ellipse in plan of that covariance.
+    pub ellipse: Option<Ellipse>,
+    /// Highest-posterior-density region in the search box.
+    pub region: Region,
+    /// Direction and range interval from the array's centre.
+    pub bearing: Bearing,
+    /// How well the place explains the arrivals.
+    pub fit: Fit,
+    /// The arrivals used, and those set aside.
+    pub antennas: Vec<AntennaFit>,
+    /// Arrivals set aside because no place can cause them.
+    pub set_aside: Vec<ImpossibleDelay>,
+    /// Separate answers, most probable first; the first is the one told as position.
+    pub modes: Vec<Mode>,
+    /// Which asset it is.
+    pub verdict: Verdict,
+    /// What the reader must know before believing it, in a fixed order.
+    pub flags: Vec<Flag>,
+    /// Whether the search was refined as far as it should be; if not, region and probabilities are coarse.
+    pub resolved: bool,
+}
+
+/// How well a place explains the arrivals.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub struct Fit {
+    /// Chi-square of the residuals at the position.
+    pub chi_square: f64,
+    /// Antennas used - 1 - unknown coordinates.
+    pub degrees_of_freedom: usize,
+    /// Probability of a greater chi-square by chance; none without degrees of freedom.
+    pub p_value: Option<f64>,
+}
+
+/// One antenna's part in a fix.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub struct AntennaFit {
+    /// Index into the antennas of the site.
+    pub antenna: usize,
+    /// Whether its arrival was used.
+    pub used: bool,
+    /// Arrival minus what the position predicts, in seconds; for an arrival set aside, against the position found
+    /// without it.
+    pub residual_s: f64,
+    /// Total sigma of the arrival, in seconds.
+    pub sigma_s: f64,
+    /// Whether the line from the position is clear.
+    pub line_of_sight: bool,
+}
+
+/// What the reader must know before believing a fix.
+#[derive(Debug, Clone, Copy, PartialEq, Eq, PartialOrd, Ord, Hash)]
+#[non_exhaustive]
+pub enum Flag {
+    /// As many unknowns as data: no arrival can be checked.
+    FewAntennas,
+    /// The direction is known, the range is not.
+    RangeUndetermined,
+    /// Another mode holds 0.05 or more.
+    MirrorAmbiguity,
+    /// The arrivals do not fit any place (p < 0.001).
+    PoorFit,
+    /// An arrival later than any place can cause was set aside.
+    AntennaLate,
+    /// An arrival earlier than any place can cause was set aside; propagation cannot do that.
+    AntennaEarly,
+    /// The region touches the edge of the search box.
+    RegionTouchesSearchEdge,
+}
+
+/// Share of another mode from which the answer counts as ambiguous.
+pub const AMBIGUOUS: f64 = 0.05;
+
+/// Locates the source of `arrivals` on `site`, with regions at `confidence` (0-1).
+///
+/// # Errors
+/// [`SolveError`] when the arrivals do not fit the site, are too few (after impossible ones are set aside),
+/// or are not finite.
+pub fn locate(site: &Site, arrivals: &Arrivals, confidence: f64) -> Result<Fix, SolveError> {
+    arrivals.check(site)?;
+    let unknowns = site.search.unknowns();
+    let (used, impossible) = set_aside(site, arrivals);
+    let received = used.antennas.len();
+    if received < unknowns + 1 {
+        return Err(SolveError::TooFewArrivals { received, unknowns, needed: unknowns + 1 });
+    }
+    let likelihood = Likelihood::new(site, &used)?;
+    let mut evaluator = Evaluator::new(&likelihood);
+
+    let starts = starts(&mut evaluator, site)?;
+    let known_best = starts.iter().map(|start| start.value.minus_two_ln).fold(f64::INFINITY, f64::min);
+    let everywhere = search(&mut evaluator, &site.search, known_best)?;
+    let (modes, owner) = modes::find(&mut evaluator, &site.search, &everywhere.cells, starts)?;
+    let Some(first) = modes.first() else { return Err(SolveError::SearchBox) };
+    let best = first.minimum.clone();
+
+    let region =
+        region::highest_density(&everywhere.cells, &site.search, confidence).ok_or(SolveError::SearchBox)?;
+    let main: Vec<Cell> =
+        everywhere.cells.iter().zip(&owner).filter(|(_, mode)| **mode == 0).map(|(cell, _)| *cell).collect();
+    let bearing = region::bearing(&main, &site.search, likelihood.array_centre_m(), confidence)
+        .ok_or(SolveError::SearchBox)?;
+    let covariance = covariance(&mut evaluator, &best.position_m, unknowns)?;
+    let degrees_of_freedom = received - 1 - unknowns;
+    let fit = Fit {
+        chi_square: best.value.chi_square,
+        degrees_of_freedom,
+        p_value: chi_square_exceedance(degrees_of_freedom, best.value.chi_square),
+    };
+    let verdict = verdict(&mut evaluator, site, &everywhere, fit.p_value)?;
+    let flags = flags(&likelihood, &fit, &bearing, &modes, &region, &impossible);
+    Ok(Fix {
+        position_m: best.position_m,
+        ended: best.ended,
+        covariance,
+        ellipse: covariance.map(|covariance| Ellipse::in_plan(&covariance.total_m2(), confidence)),
+        region,
+        bearing,
+        fit,
+        antennas: antenna_fits(site, arrivals, &mut evaluator, &used, &best.position_m)?,
+        set_aside: impossible,
+        modes,
+        verdict,
+        flags,
+        resolved: everywhere.resolved,
+    })
+}
+
+/// Minima reached from the algebraic roots and from the middle of the search box.
+fn starts(evaluator: &mut Evaluator<'_>, site: &Site) -> Result<Vec<Minimum>, SolveError> {
+    let likelihood = evaluator.likelihood();
+    let height_m = site.search.is_plane().then_some(site.search.min_m.z);
+    let mut starts_m: Vec<Vector3<f64>> =
+        closed_form::roots(likelihood.positions_m(), likelihood.ranges_m(), height_m)
+            .iter()
+            .map(|root| root.position_m)
+            .collect();
+    starts_m.push((site.search.min_m + site.search.max_m) / 2.0);
+    starts_m.iter().map(|start_m| refine(evaluator, &site.search, start_m)).collect()
+}
+
+fn flags(
+    likelihood: &Likelihood,
+    fit: &Fit,
+    bearing: &Bearing,
+    modes: &[Mode],
+    region: &Region,
+    impossible: &[ImpossibleDelay],
+) -> Vec<Flag> {
+    let (near_m, far_m) = bearing.range_m;
+    // About a source among the antennas the ratio of ranges from their centre says nothing.
+    let array_m = likelihood
+        .positions_m()
+        .iter()
+        .map(|position| (position - bearing.from_m).norm())
+        .fold(0.0, f64::max);
+    let outside = far_m > array_m;
+    let range_undetermined =
+        outside && (far_m > 2.0 * near_m || (bearing.range_reaches_edge && far_m > 1.2 * near_m));
+    [
+        (fit.degrees_of_freedom == 0, Flag::FewAntennas),
+        (range_undetermined, Flag::RangeUndetermined),
+        (modes.iter().skip(1).any(|mode| mode.probability >= AMBIGUOUS), Flag::MirrorAmbiguity),
+        (fit.p_value.is_some_and(|p| p < POOR_FIT), Flag::PoorFit),
+        (impossible.iter().any(|delay| delay.delay_s > 0.0), Flag::AntennaLate),
+        (impossible.iter().any(|delay| delay.delay_s < 0.0), Flag::AntennaEarly),
+        (!region.bounded, Flag::RegionTouchesSearchEdge),
+    ]
+    .into_iter()
+    .filter_map(|(holds, flag)| holds.then_some(flag))
+    .collect()
+}
+
+fn antenna_fits(
+    site: &Site,
+    arrivals: &Arrivals,
+    evaluator: &mut Evaluator<'_>,
+    used: &Arrivals,
+    position_m: &Vector3<f64>,
+) -> Result<Vec<AntennaFit>, SolveError> {
+    // Residuals of all arrivals against the emission time of those used.
+    let speed = site.air.speed_m_per_s;
+    let likelihood = evaluator.likelihood();
+    let residuals_m = evaluator.residuals_m(position_m)?;
+    let systematic_m2 = likelihood.systematic_variances_m2(position_m);
+    let way_m = |index: usize| (site.antennas[index].position_m - position_m).norm();
+    let emission_s = used.times_s[0] - way_m(used.antennas[0]) / speed - residuals_m[0] / speed;
+    let everyone = Likelihood::new(site, arrivals)?;
+    let everyones_m2 = everyone.systematic_variances_m2(position_m);
+    Ok(arrivals
+        .antennas
+        .iter()
+        .enumerate()
+        .map(|(place, &antenna)| {
+            let random_s2 = arrivals.random_covariance_s2[(place, place)];
+            let as_used = used.antennas.iter().position(|&other| other == antenna);
+            let (residual_s, systematic) = match as_used {
+                Some(k) => (residuals_m[k] / speed, systematic_m2[k]),
+                None => (arrivals.times_s[place] - way_m(antenna) / speed - emission_s, everyones_m2[place]),
+            };
+            AntennaFit {
+                antenna,
+                used: as_used.is_some(),
+                residual_s,
+                sigma_s: (random_s2 + systematic / (speed * speed)).sqrt(),
+                line_of_sight: everyone.line_of_sight(place, position_m),
+            }
+        })
+        .collect())
+}
