@@ -144,6 +144,22 @@ impl Capture {
         Ok(self)
     }
 
+    /// The capture of some of the channels (indices counted from 0), in the order given.
+    ///
+    /// # Panics
+    /// When there is no such channel, or none is asked for.
+    #[must_use]
+    pub fn select(&self, channels: &[usize]) -> Self {
+        assert!(!channels.is_empty(), "a capture has at least one channel");
+        Self {
+            samples: channels.iter().flat_map(|&index| self.channel(index)).copied().collect(),
+            channel_count: channels.len(),
+            sample_count: self.sample_count,
+            sample_rate_hz: self.sample_rate_hz,
+            range: self.range.as_ref().map(|range| channels.iter().map(|&index| range[index]).collect()),
+        }
+    }
+
     /// Number of channels.
     #[must_use]
     pub fn channel_count(&self) -> usize {

@@ -233,3 +233,186 @@ fn antenna_fits(
         })
         .collect())
 }
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use crate::site::{Air, Antenna, PositionSigma, Priors, SearchBox};
+
+    const SPEED: f64 = 3e8;
+
+    fn site(places: &[[f64; 3]], min: [f64; 3], max: [f64; 3]) -> Site {
+        Site {
+            antennas: places
+                .iter()
+                .map(|&position| Antenna {
+                    name: format!("{position:?}"),
+                    position_m: position.into(),
+                    position_sigma: PositionSigma::Isotropic(0.03),
+                    delay_sigma_s: 1e-10,
+                    response_sigma_s: 5e-11,
+                })
+                .collect(),
+            assets: vec![],
+            obstacles: vec![],
+            air: Air { speed_m_per_s: SPEED },
+            search: SearchBox { min_m: min.into(), max_m: max.into() },
+            priors: Priors::default(),
+        }
+    }
+
+    const SPREAD: [[f64; 3]; 6] = [
+        [0.0, 0.0, 1.0],
+        [16.0, 1.0, 8.0],
+        [15.0, 14.0, 1.5],
+        [1.0, 13.0, 9.0],
+        [8.0, -3.0, 5.0],
+        [9.0, 18.0, 1.0],
+    ];
+
+    fn times(site: &Site, source: [f64; 3]) -> Vec<f64> {
+        let source = Vector3::from(source);
+        site.antennas.iter().map(|a| (a.position_m - source).norm() / SPEED).collect()
+    }
+
+    fn fix(site: &Site, times: &[f64]) -> Fix {
+        locate(site, &Arrivals::independent(times, &vec![3e-11; times.len()]), 0.95).unwrap()
+    }
+
+    #[test]
+    fn a_good_geometry_raises_no_flag() {
+        let site = site(&SPREAD, [-5.0, -8.0, 0.0], [22.0, 22.0, 12.0]);
+        let fix = fix(&site, &times(&site, [7.0, 6.0, 5.0]));
+        assert_eq!(fix.flags, []);
+        assert!((fix.position_m - Vector3::new(7.0, 6.0, 5.0)).norm() < 1e-4);
+        assert_eq!((fix.fit.degrees_of_freedom, fix.modes.len()), (2, 1));
+        assert!(fix.resolved && fix.region.bounded && fix.ended == Ended::Converged);
+        let covariance = fix.covariance.unwrap();
+        assert!((covariance.total_m2() - covariance.random_m2 - covariance.systematic_m2).norm() < 1e-15);
+    }
+
+    #[test]
+    fn four_antennas_check_nothing() {
+        let site = site(&SPREAD[..4], [-5.0, -8.0, 0.0], [22.0, 22.0, 12.0]);
+        let fix = fix(&site, &times(&site, [7.0, 6.0, 5.0]));
+        assert!(fix.flags.contains(&Flag::FewAntennas));
+        assert_eq!((fix.fit.degrees_of_freedom, fix.fit.p_value), (0, None));
+    }
+
+    #[test]
+    fn a_small_array_sees_a_bearing_and_no_range() {
+        let square = [[0.0, 0.0, 2.0], [4.0, 0.0, 3.0], [4.0, 4.0, 1.0], [0.0, 4.0, 2.5], [2.0, 2.0, 4.0]];
+        let site = site(&square, [-60.0, -10.0, 0.0], [60.0, 90.0, 30.0]);
+        let far = fix(&site, &times(&site, [5.0, 40.0, 12.0]));
+        assert!(far.flags.contains(&Flag::RangeUndetermined), "{:?}", far.bearing);
+        // Seen from the centre (2, 2, 2.5): 3 m east, 38 m north, 9.5 m up.
+        assert!((far.bearing.azimuth_deg - 3.0_f64.atan2(38.0).to_degrees()).abs() < 1.5);
+        assert!(far.bearing.azimuth_sigma_deg > 0.1 && far.bearing.azimuth_sigma_deg < 3.0);
+        // Inside the array its range from the centre spans 2:1 for no interesting reason.
+        let near = fix(&site, &times(&site, [2.2, 2.1, 2.6]));
+        assert!(!near.flags.contains(&Flag::RangeUndetermined), "{:?}", near.bearing);
+    }
+
+    #[test]
+    fn a_flat_array_has_a_mirror() {
+        let flat: Vec<[f64; 3]> = SPREAD.iter().map(|p| [p[0], p[1], 3.0]).collect();
+        let site = site(&flat, [-5.0, -8.0, -6.0], [22.0, 22.0, 12.0]);
+        let fix = fix(&site, &times(&site, [7.0, 6.0, 8.0]));
+        assert!(fix.flags.contains(&Flag::MirrorAmbiguity));
+        let mut heights: Vec<f64> = fix.modes.iter().map(|mode| mode.minimum.position_m.z).collect();
+        heights.sort_by(f64::total_cmp);
+        assert!((heights[0] + 2.0).abs() < 0.01 && (heights[1] - 8.0).abs() < 0.01, "{heights:?}");
+        assert!((fix.modes[0].probability - 0.5).abs() < 0.05);
+    }
+
+    #[test]
+    fn times_that_fit_no_place_are_told_and_name_nobody() {
+        let mut site = site(&SPREAD, [-5.0, -8.0, 0.0], [22.0, 22.0, 12.0]);
+        site.assets = vec![crate::site::Asset {
+            name: "post".into(),
+            kind: String::new(),
+            from_m: Vector3::new(7.0, 6.0, 4.0),
+            to_m: Vector3::new(7.0, 6.0, 6.0),
+            radius_m: 0.3,
+            weight: 1.0,
+        }];
+        let mut times = times(&site, [7.0, 6.0, 5.0]);
+        times[2] += 3e-9;
+        let fix = fix(&site, &times);
+        assert!(fix.flags.contains(&Flag::PoorFit));
+        assert_eq!(fix.verdict.statement, crate::verdict::Statement::CannotTell);
+        assert!(fix.verdict.named.is_empty());
+    }
+
+    #[test]
+    fn an_impossible_arrival_is_set_aside_with_its_reason() {
+        let site = site(&SPREAD, [-5.0, -8.0, 0.0], [22.0, 22.0, 12.0]);
+        for (shift_s, flag) in [(200e-9, Flag::AntennaLate), (-200e-9, Flag::AntennaEarly)] {
+            let mut times = times(&site, [7.0, 6.0, 5.0]);
+            times[3] += shift_s;
+            let fix = fix(&site, &times);
+            assert!(fix.flags.contains(&flag));
+            assert_eq!(fix.set_aside.iter().map(|delay| delay.antenna).collect::<Vec<_>>(), [3]);
+            assert!((fix.position_m - Vector3::new(7.0, 6.0, 5.0)).norm() < 1e-3);
+            let aside = fix.antennas.iter().find(|antenna| antenna.antenna == 3).unwrap();
+            assert!(!aside.used && (aside.residual_s - shift_s).abs() < 1e-11);
+        }
+    }
+
+    #[test]
+    fn a_source_outside_the_box_touches_its_edge() {
+        let site = site(&SPREAD, [-5.0, -8.0, 0.0], [22.0, 22.0, 12.0]);
+        let fix = fix(&site, &times(&site, [24.0, 6.0, 5.0]));
+        assert!(fix.flags.contains(&Flag::RegionTouchesSearchEdge) && !fix.region.bounded);
+        assert!(site.search.contains(&fix.position_m));
+    }
+
+    #[test]
+    fn on_a_plane_the_height_is_given() {
+        let site = site(&SPREAD[..4], [-5.0, -8.0, 6.0], [22.0, 22.0, 6.0]);
+        let fix = fix(&site, &times(&site, [7.0, 6.0, 6.0]));
+        assert!((fix.position_m - Vector3::new(7.0, 6.0, 6.0)).norm() < 1e-4);
+        assert_eq!(fix.fit.degrees_of_freedom, 1);
+        assert!(fix.covariance.unwrap().total_m2()[(2, 2)].abs() < 1e-15);
+        assert!(!fix.flags.contains(&Flag::RegionTouchesSearchEdge));
+    }
+
+    #[test]
+    fn degenerate_input_gives_a_result_or_says_why_not() {
+        let good = site(&SPREAD, [-5.0, -8.0, 0.0], [22.0, 22.0, 12.0]);
+        let arrivals = Arrivals::independent(&times(&good, [7.0, 6.0, 5.0]), &[3e-11; 6]);
+        // On an antenna; all arrivals equal; far coordinates; 64 antennas.
+        let on_antenna = Vector3::from(SPREAD[1]);
+        let found = fix(&good, &times(&good, SPREAD[1]));
+        assert!((found.position_m - on_antenna).norm() < 0.05);
+        assert!(fix(&good, &[1e-6; 6]).position_m.iter().all(|value| value.is_finite()));
+        let offset = Vector3::new(1e7, -1e7, 0.0);
+        let mut remote = good.clone();
+        remote.antennas.iter_mut().for_each(|antenna| antenna.position_m += offset);
+        remote.search = SearchBox { min_m: good.search.min_m + offset, max_m: good.search.max_m + offset };
+        let found = locate(&remote, &arrivals, 0.95).unwrap();
+        assert!((found.position_m - offset - Vector3::new(7.0, 6.0, 5.0)).norm() < 1e-3);
+        let many: Vec<[f64; 3]> =
+            (0..64).map(|i| [f64::from(i % 8) * 3.0, f64::from(i / 8) * 3.0, f64::from(i * i % 7)]).collect();
+        let many = site(&many, [-5.0, -5.0, 0.0], [30.0, 30.0, 12.0]);
+        let found = fix(&many, &times(&many, [7.0, 6.0, 5.0]));
+        assert!((found.position_m - Vector3::new(7.0, 6.0, 5.0)).norm() < 1e-3);
+
+        let refused = |site: &Site, arrivals: &Arrivals| locate(site, arrivals, 0.95).unwrap_err();
+        let few = arrivals.only(|place| place < 3);
+        assert_eq!(refused(&good, &few), SolveError::TooFewArrivals { received: 3, unknowns: 3, needed: 4 });
+        let mut nan = arrivals.clone();
+        nan.times_s[1] = f64::NAN;
+        assert!(matches!(refused(&good, &nan), SolveError::NotFinite { .. }));
+        let mut twice = arrivals.clone();
+        twice.antennas[1] = 0;
+        assert!(matches!(refused(&good, &twice), SolveError::AntennaIndex { index: 0, .. }));
+        let one_place = site(&[[1.0, 2.0, 3.0]; 4], [-5.0; 3], [9.0; 3]);
+        let equal = Arrivals::independent(&[1e-9; 4], &[3e-11; 4]);
+        assert_eq!(refused(&one_place, &equal), SolveError::CoincidentAntennas);
+        let mut indefinite = arrivals;
+        indefinite.random_covariance_s2[(0, 1)] = 1e-18;
+        indefinite.random_covariance_s2[(1, 0)] = 1e-18;
+        assert_eq!(refused(&good, &indefinite), SolveError::Covariance);
+    }
+}

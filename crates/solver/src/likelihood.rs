@@ -86,7 +86,7 @@ impl Likelihood {
         let mut likelihood = Self {
             position_sigmas: chosen.iter().map(|antenna| antenna.position_sigma).collect(),
             ranges_m: arrivals.times_s.iter().map(|time| (time - mean_s) * speed_m_per_s).collect(),
-            random_m2: &arrivals.random_covariance_s2 * speed_m_per_s.powi(2),
+            random_m2: symmetric(&arrivals.random_covariance_s2) * speed_m_per_s.powi(2),
             chain_m2: chosen
                 .iter()
                 .map(|a| (a.delay_sigma_s.powi(2) + a.response_sigma_s.powi(2)) * speed_m_per_s.powi(2))
@@ -184,20 +184,25 @@ impl Likelihood {
     }
 
     fn systematic_m2(&self, shadowed: Mask, position: impl Fn(&PositionSigma, usize) -> f64) -> Vec<f64> {
-        (0..self.len())
-            .map(|i| {
-                let late = if shadowed >> i & 1 == 1 { self.late_m.powi(2) } else { 0.0 };
-                self.chain_m2[i] + position(&self.position_sigmas[i], i) + late
-            })
-            .collect()
+        (0..self.len()).map(|i| self.systematic_of(i, shadowed, &position)).collect()
+    }
+
+    fn systematic_of(
+        &self,
+        index: usize,
+        shadowed: Mask,
+        position: impl Fn(&PositionSigma, usize) -> f64,
+    ) -> f64 {
+        let late = if shadowed >> index & 1 == 1 { self.late_m.powi(2) } else { 0.0 };
+        self.chain_m2[index] + position(&self.position_sigmas[index], index) + late
     }
 
     fn weights(&self, systematic_m2: &[f64]) -> Option<Weights> {
-        let mut covariance = self.random_m2.clone();
+        let mut covariance = self.random_m2.as_slice().to_vec();
         for (i, variance) in systematic_m2.iter().enumerate() {
-            covariance[(i, i)] += variance;
+            covariance[i * self.len() + i] += variance;
         }
-        Weights::new(&covariance)
+        Weights::new(&covariance, self.len())
     }
 
     /// Weights for the arrivals not in `dropped`, whose rows and columns are left out of S; whitened residuals then
@@ -219,6 +224,11 @@ impl Likelihood {
     }
 }
 
+/// The symmetric part: rounding may have left the halves of a covariance unlike in the last digit.
+fn symmetric(matrix: &DMatrix<f64>) -> DMatrix<f64> {
+    (matrix + matrix.transpose()) * 0.5
+}
+
 /// The unit vector along `way`, or zero where the source sits on the antenna and has no direction.
 pub(crate) fn unit_or_zero(way: &Vector3<f64>) -> Vector3<f64> {
     way.try_normalize(0.0).unwrap_or_else(Vector3::zeros)
@@ -232,6 +242,9 @@ pub struct Evaluator<'a> {
     by_shadow: HashMap<Mask, Weights>,
     /// Weights for bounds, by shadowed and dropped antennas.
     bounding: HashMap<(Mask, Mask), Weights>,
+    /// Weights that are made anew for every place, where they depend on it.
+    spare: Option<Weights>,
+    covariance: Vec<f64>,
     residuals: Vec<f64>,
     whitened: Vec<f64>,
     column: Vec<f64>,
@@ -259,6 +272,8 @@ impl<'a> Evaluator<'a> {
             likelihood,
             by_shadow: HashMap::new(),
             bounding: HashMap::new(),
+            spare: None,
+            covariance: Vec::new(),
             residuals: vec![0.0; n],
             whitened: vec![0.0; n],
             column: vec![0.0; n],
@@ -283,7 +298,7 @@ impl<'a> Evaluator<'a> {
         }
         let shadowed = self.likelihood.shadowed(at_m);
         self.travel(at_m, shadowed);
-        self.with_weights(at_m, shadowed, |_, _| ()).map(|(value, ())| value).ok_or(SolveError::Covariance)
+        self.with_weights(shadowed, |_, _| ()).map(|(value, ())| value).ok_or(SolveError::Covariance)
     }
 
     /// The whitened residuals and their derivative about `at_m`, the weights held as they are there.
@@ -297,7 +312,7 @@ impl<'a> Evaluator<'a> {
         let shadowed = self.likelihood.shadowed(at_m);
         self.travel(at_m, shadowed);
         let (value, columns) = self
-            .with_weights(at_m, shadowed, |weights, evaluator| {
+            .with_weights(shadowed, |weights, evaluator| {
                 [0, 1, 2].map(|axis| {
                     evaluator.whiten_direction(weights, axis);
                     evaluator.column.clone()
@@ -327,7 +342,7 @@ impl<'a> Evaluator<'a> {
         }
         let Ok(inverse) = svd.pseudo_inverse(0.0) else { return Ok(None) };
         let shadowed = self.likelihood.shadowed(at_m);
-        let whitener = self.with_weights(at_m, shadowed, |weights, _| weights.matrix());
+        let whitener = self.with_weights(shadowed, |weights, _| weights.matrix());
         Ok(whitener.map(|(_, whitener)| {
             let mut sensitivity = DMatrix::zeros(3, n);
             sensitivity.rows_mut(0, unknowns).copy_from(&(-(inverse * whitener)));
@@ -343,7 +358,7 @@ impl<'a> Evaluator<'a> {
         self.at(at_m)?;
         let shadowed = self.likelihood.shadowed(at_m);
         let (_, common) = self
-            .with_weights(at_m, shadowed, |weights, evaluator| weights.common(&evaluator.residuals))
+            .with_weights(shadowed, |weights, evaluator| weights.common(&evaluator.residuals))
             .ok_or(SolveError::Covariance)?;
         Ok(self.residuals.iter().map(|residual| residual - common).collect())
     }
@@ -427,16 +442,14 @@ impl<'a> Evaluator<'a> {
     /// Whitens the residuals with the weights of this place and lets `use_weights` work with them.
     fn with_weights<R>(
         &mut self,
-        at_m: &Vector3<f64>,
         shadowed: Mask,
         use_weights: impl FnOnce(&Weights, &mut Self) -> R,
     ) -> Option<(Value, R)> {
         let likelihood = self.likelihood;
-        let weights = match self.by_shadow.remove(&shadowed) {
+        let kept = if likelihood.isotropic { self.by_shadow.remove(&shadowed) } else { None };
+        let weights = match kept {
             Some(weights) => weights,
-            None => likelihood.weights(&likelihood.systematic_m2(shadowed, |sigma, i| {
-                sigma.variance_along_m2(&unit_or_zero(&(at_m - likelihood.positions_m[i])))
-            }))?,
+            None => self.weights_at(shadowed)?,
         };
         let mut whitened = std::mem::take(&mut self.whitened);
         weights.apply(&self.residuals, &mut whitened);
@@ -446,8 +459,27 @@ impl<'a> Evaluator<'a> {
         let result = use_weights(&weights, self);
         if likelihood.isotropic {
             self.by_shadow.insert(shadowed, weights);
+        } else {
+            self.spare = Some(weights);
         }
         Some((Value { chi_square, minus_two_ln: chi_square + excess }, result))
+    }
+
+    /// The weights of the place last travelled to.
+    fn weights_at(&mut self, shadowed: Mask) -> Option<Weights> {
+        let likelihood = self.likelihood;
+        let n = likelihood.len();
+        self.covariance.clear();
+        self.covariance.extend_from_slice(likelihood.random_m2.as_slice());
+        for i in 0..n {
+            let along = |sigma: &PositionSigma, i: usize| sigma.variance_along_m2(&self.directions[i]);
+            let systematic = likelihood.systematic_of(i, shadowed, along);
+            self.covariance[i * n + i] += systematic;
+        }
+        match self.spare.take() {
+            Some(mut weights) => weights.refill(&self.covariance).then_some(weights),
+            None => Weights::new(&self.covariance, n),
+        }
     }
 
     /// Writes the derivative of the whitened residuals by one coordinate to `column`.

@@ -1,6 +1,6 @@
 //! Whitening with the emission time taken out.
 
-use nalgebra::{DMatrix, DVector};
+use nalgebra::DMatrix;
 
 /// What a covariance S of arrival errors turns residuals r into: `z = W r` with `|z|^2 = r' P r`, where
 /// `P = S^-1 - S^-1 1 1' S^-1 / (1' S^-1 1)` is the precision that is left when the unknown moment of emission,
@@ -18,32 +18,75 @@ pub(crate) struct Weights {
     pub(crate) ln_determinants: f64,
     /// `S^-1 1 / (1' S^-1 1)`: the weighted mean that estimates the emission time.
     mean: Vec<f64>,
+    /// Scratch: the Cholesky factor L.
+    lower: Vec<f64>,
 }
 
 impl Weights {
-    /// None when S is not positive definite (or not finite).
-    pub(crate) fn new(covariance: &DMatrix<f64>) -> Option<Self> {
-        let n = covariance.nrows();
-        let cholesky = covariance.clone().cholesky()?;
-        let lower = cholesky.l_dirty();
-        let ln_det_s: f64 = (0..n).map(|i| 2.0 * lower[(i, i)].ln()).sum();
-        let mut inverse = DMatrix::identity(n, n);
-        if !lower.solve_lower_triangular_mut(&mut inverse) {
-            return None;
+    /// None when S (row-major, n x n) is not positive definite, or not finite.
+    pub(crate) fn new(covariance: &[f64], n: usize) -> Option<Self> {
+        let mut weights = Self {
+            whitener: vec![0.0; n * n],
+            column_norms: vec![0.0; n],
+            ln_determinants: 0.0,
+            mean: vec![0.0; n],
+            lower: vec![0.0; n * n],
+        };
+        weights.refill(covariance).then_some(weights)
+    }
+
+    /// Makes these the weights of another covariance of the same size, in the memory there is. False when it is not
+    /// positive definite; the weights are then of no use.
+    ///
+    /// Plain loops: this runs for every place where antennas' sigmas differ by direction, on a handful of antennas.
+    pub(crate) fn refill(&mut self, covariance: &[f64]) -> bool {
+        let n = self.mean.len();
+        let lower = &mut self.lower;
+        let mut ln_det_s = 0.0;
+        for i in 0..n {
+            for j in 0..=i {
+                let known: f64 = (0..j).map(|k| lower[i * n + k] * lower[j * n + k]).sum();
+                let left = covariance[i * n + j] - known;
+                if i == j {
+                    // Written so that NaN is refused too.
+                    if !(left > 0.0 && left.is_finite()) {
+                        return false;
+                    }
+                    lower[i * n + i] = left.sqrt();
+                    ln_det_s += left.ln();
+                } else {
+                    lower[i * n + j] = left / lower[j * n + j];
+                }
+            }
         }
-        let ones = &inverse * DVector::from_element(n, 1.0);
-        let ones_norm = ones.norm();
-        let unit = &ones / ones_norm;
-        let row = unit.transpose() * &inverse;
-        let whitener = &inverse - &unit * &row;
-        let ln_determinants = ln_det_s + 2.0 * ones_norm.ln();
-        let finite = ln_determinants.is_finite() && whitener.iter().all(|value| value.is_finite());
-        finite.then(|| Self {
-            column_norms: whitener.column_iter().map(|column| column.norm()).collect(),
-            mean: (row / ones_norm).iter().copied().collect(),
-            whitener: whitener.transpose().iter().copied().collect(),
-            ln_determinants,
-        })
+        // L^-1 into `whitener`, row by row, and L^-1 1 into `column_norms` until they are known.
+        let inverse = &mut self.whitener;
+        inverse.fill(0.0);
+        for i in 0..n {
+            let pivot = 1.0 / lower[i * n + i];
+            inverse[i * n + i] = pivot;
+            for j in 0..i {
+                let known: f64 = (j..i).map(|k| lower[i * n + k] * inverse[k * n + j]).sum();
+                inverse[i * n + j] = -pivot * known;
+            }
+            self.column_norms[i] = inverse[i * n..(i + 1) * n].iter().sum();
+        }
+        let ones_norm = self.column_norms.iter().map(|value| value * value).sum::<f64>().sqrt();
+        self.ln_determinants = ln_det_s + 2.0 * ones_norm.ln();
+        // u' L^-1; over the norm of L^-1 1 it is the weighted mean.
+        for j in 0..n {
+            let row: f64 = (j..n).map(|i| self.column_norms[i] * inverse[i * n + j]).sum();
+            self.mean[j] = row / (ones_norm * ones_norm);
+        }
+        for i in 0..n {
+            for j in 0..n {
+                inverse[i * n + j] -= self.column_norms[i] * self.mean[j];
+            }
+        }
+        for j in 0..n {
+            self.column_norms[j] = (0..n).map(|i| inverse[i * n + j].powi(2)).sum::<f64>().sqrt();
+        }
+        self.ln_determinants.is_finite() && self.column_norms.iter().all(|value| value.is_finite())
     }
 
     /// Writes `W r` to `whitened`.
@@ -70,6 +113,12 @@ impl Weights {
 mod tests {
     use super::*;
     use approx::assert_relative_eq;
+    use nalgebra::DVector;
+
+    fn of(covariance: &DMatrix<f64>) -> Option<Weights> {
+        // Symmetric, so that column-major is row-major.
+        Weights::new(covariance.as_slice(), covariance.nrows())
+    }
 
     fn covariance() -> DMatrix<f64> {
         DMatrix::from_row_slice(3, 3, &[2.0, 0.3, 0.1, 0.3, 1.0, -0.2, 0.1, -0.2, 0.5])
@@ -84,7 +133,7 @@ mod tests {
     #[test]
     fn is_the_least_over_all_emission_times() {
         let covariance = covariance();
-        let weights = Weights::new(&covariance).unwrap();
+        let weights = of(&covariance).unwrap();
         let residuals = DVector::from_row_slice(&[0.4, -1.0, 2.0]);
         let inverse = covariance.try_inverse().unwrap();
         let at = |t0: f64| {
@@ -101,7 +150,7 @@ mod tests {
         // T. Chan, K. Ho 1994 and common practice use N - 1 differences; with their full covariance they are
         // the same thing, whichever antenna is the reference.
         let covariance = covariance();
-        let weights = Weights::new(&covariance).unwrap();
+        let weights = of(&covariance).unwrap();
         let residuals = DVector::from_row_slice(&[0.4, -1.0, 2.0]);
         for reference in 0..3 {
             let others: Vec<usize> = (0..3).filter(|&i| i != reference).collect();
@@ -119,7 +168,7 @@ mod tests {
     fn determinants_are_those_of_the_differences() {
         // ln det S + ln(1' S^-1 1) is ln det of the covariance of differences.
         let covariance = covariance();
-        let weights = Weights::new(&covariance).unwrap();
+        let weights = of(&covariance).unwrap();
         let difference = DMatrix::from_row_slice(2, 3, &[-1.0, 1.0, 0.0, -1.0, 0.0, 1.0]);
         let c = &difference * &covariance * difference.transpose();
         assert_relative_eq!(weights.ln_determinants, c.determinant().ln(), max_relative = 1e-12);
@@ -127,7 +176,7 @@ mod tests {
 
     #[test]
     fn refuses_what_is_no_covariance() {
-        assert!(Weights::new(&DMatrix::from_element(2, 2, 1.0)).is_none());
-        assert!(Weights::new(&DMatrix::from_element(2, 2, f64::NAN)).is_none());
+        assert!(of(&DMatrix::from_element(2, 2, 1.0)).is_none());
+        assert!(of(&DMatrix::from_element(2, 2, f64::NAN)).is_none());
     }
 }
