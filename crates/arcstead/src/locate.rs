@@ -1,0 +1,350 @@
+//! From the arrivals of a visit to the sources told: combining, solving, and the document.
+
+use arcstead_core::Method;
+use arcstead_solver::{self as solver, Arrivals, Combined, Fix, SolveError, combine, consensus};
+use nalgebra::{DVector, Matrix3};
+
+use crate::arrivals_table::CaptureArrivals;
+use crate::cautions;
+use crate::documents::{
+    Alternative, AntennaResult, AssetProbability, Bearing, CaptureCounts, Document, Ellipse, Fit, Flag, Head,
+    Inputs, LocateDocument, Program, Region, RejectedCapture, SourceResult, Statement, Verdict,
+};
+use crate::site::Site;
+use crate::timer::ArrivalOptions;
+use crate::visit::{TimedVisit, VisitError};
+
+/// How sources are told.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub struct LocateOptions {
+    /// How the arrival times were found; told in the document.
+    pub arrivals: ArrivalOptions,
+    /// Probability that the regions hold the source, between 0 and 1 (default 0.95).
+    pub confidence: f64,
+    /// Whether every capture is solved by itself (default false).
+    pub each: bool,
+}
+
+impl Default for LocateOptions {
+    fn default() -> Self {
+        Self { arrivals: ArrivalOptions::default(), confidence: 0.95, each: false }
+    }
+}
+
+/// Fewest captures that make a source when they are the smaller part of a visit: two may agree by chance.
+const FEWEST_AGREEING: usize = 3;
+
+/// A capture with enough arrivals to be solved.
+struct Usable<'t> {
+    capture: &'t CaptureArrivals,
+    arrivals: Arrivals,
+}
+
+/// What became of the captures, as it grows.
+#[derive(Default)]
+struct Told {
+    counts: CaptureCounts,
+    sources: Vec<SourceResult>,
+    cautions: Vec<String>,
+}
+
+/// Tells the source of a visit: the largest set of captures that agree with each other, combined and solved. What does not
+/// agree is counted as stray. With [`LocateOptions::each`] every capture is a source of its own.
+///
+/// No pulse, or no place that explains the arrivals, is a result: a document without sources.
+///
+/// # Errors
+/// [`VisitError::SeveralStances`] when the captures were not all taken from one stance.
+pub fn locate(
+    site: &Site,
+    visit: &TimedVisit,
+    options: &LocateOptions,
+) -> Result<LocateDocument, VisitError> {
+    let stance = visit.stance()?;
+    let geometry = site.geometry_of_stance(stance).unwrap_or_else(|| site.geometry.clone());
+    let mut told = Told::default();
+    told.counts.read = visit.arrivals.len();
+    told.counts.rejected.clone_from(&visit.unreadable);
+
+    let mut usable = Vec::new();
+    for capture in &visit.arrivals {
+        match usable_arrivals(&geometry, capture) {
+            Ok(arrivals) => usable.push(Usable { capture, arrivals }),
+            Err(reason) => reject(&mut told, capture, reason),
+        }
+    }
+    if options.each {
+        for one in &usable {
+            match solver::locate(&geometry, &one.arrivals, options.confidence) {
+                Ok(fix) => {
+                    let members = [one];
+                    told.sources.push(source(site, &geometry, &members, &fix));
+                    told.counts.used += 1;
+                }
+                Err(error) => reject(&mut told, one.capture, error.to_string()),
+            }
+        }
+        told.cautions.extend(cautions::of_each(&told.sources));
+    } else {
+        combined_source(site, &geometry, &usable, options, &mut told);
+    }
+    told.cautions.extend(cautions::of_every_result());
+    Ok(LocateDocument {
+        head: head(site, visit, options),
+        incomplete: visit.incomplete,
+        captures: told.counts,
+        sources: told.sources,
+        cautions: told.cautions,
+    })
+}
+
+fn reject(told: &mut Told, capture: &CaptureArrivals, reason: String) {
+    told.counts.rejected.push(RejectedCapture { capture: capture.capture.clone(), reason });
+}
+
+/// The arrivals of a capture, or why it cannot be solved.
+fn usable_arrivals(geometry: &solver::Site, capture: &CaptureArrivals) -> Result<Arrivals, String> {
+    let received: Vec<usize> =
+        (0..capture.antennas.len()).filter(|&row| capture.antennas[row].arrival_s.is_some()).collect();
+    let needed = geometry.search.unknowns() + 1;
+    if received.is_empty() {
+        return Err("no pulse above the noise".into());
+    }
+    if received.len() < needed {
+        let names: Vec<&str> = received
+            .iter()
+            .map(|&row| geometry.antennas[capture.antennas[row].antenna].name.as_str())
+            .collect();
+        return Err(format!(
+            "pulse on {} of {} antennas ({}); a place needs at least {needed}",
+            received.len(),
+            geometry.antennas.len(),
+            names.join(", ")
+        ));
+    }
+    Ok(Arrivals {
+        antennas: received.iter().map(|&row| capture.antennas[row].antenna).collect(),
+        times_s: DVector::from_iterator(
+            received.len(),
+            received.iter().filter_map(|&row| capture.antennas[row].arrival_s),
+        ),
+        random_covariance_s2: capture.covariance_s2.select_rows(&received).select_columns(&received),
+    })
+}
+
+/// Solves the largest set of captures that agree, and tells what it finds.
+fn combined_source(
+    site: &Site,
+    geometry: &solver::Site,
+    usable: &[Usable<'_>],
+    options: &LocateOptions,
+    told: &mut Told,
+) {
+    let agreed = consensus(&usable.iter().map(|one| &one.arrivals).collect::<Vec<_>>());
+    let members: Vec<&Usable<'_>> = agreed.members.iter().map(|&index| &usable[index]).collect();
+    let enough = members.len() >= FEWEST_AGREEING || 2 * members.len() >= usable.len();
+    let whole = combine(&members.iter().map(|member| &member.arrivals).collect::<Vec<_>>());
+    let (Some(whole), true) = (whole, enough) else {
+        told.counts.stray = usable.len();
+        told.cautions.extend(cautions::of_no_agreement(usable.len()));
+        return;
+    };
+    match solver::locate(geometry, &whole.arrivals, options.confidence) {
+        Ok(fix) => {
+            told.counts.used = members.len();
+            told.counts.stray = usable.len() - members.len();
+            let source = source(site, geometry, &members, &fix);
+            let captures: Vec<&CaptureArrivals> = members.iter().map(|member| member.capture).collect();
+            told.cautions.extend(cautions::of_source(site, &source, &fix, &whole, &captures));
+            told.cautions.extend(cautions::of_strays(told.counts.stray, usable.len()));
+            told.sources.push(source);
+        }
+        Err(error) => {
+            told.counts.stray = usable.len();
+            told.cautions.push(no_place(site, geometry, &whole, members.len(), &error));
+        }
+    }
+}
+
+/// Why captures that agree with each other fit no place.
+fn no_place(
+    site: &Site,
+    geometry: &solver::Site,
+    whole: &Combined,
+    captures: usize,
+    error: &SolveError,
+) -> String {
+    let (_, impossible) = solver::set_aside(geometry, &whole.arrivals);
+    let reasons: Vec<String> = impossible.iter().map(|delay| cautions::of_impossible(site, delay)).collect();
+    if reasons.is_empty() {
+        format!("{captures} captures agree with each other, but no place can be computed: {error}")
+    } else {
+        format!(
+            "{captures} captures agree with each other, but no place can be computed: {error}. {}",
+            reasons.join(" ")
+        )
+    }
+}
+
+fn head(site: &Site, visit: &TimedVisit, options: &LocateOptions) -> Head {
+    let mut told = serde_json::Map::new();
+    told.insert("method".into(), method_name(options.arrivals.method).into());
+    let band_mhz = options.arrivals.band_of(site).map(|(low, high)| vec![low / 1e6, high / 1e6]);
+    told.insert("band".into(), band_mhz.into());
+    told.insert("excise".into(), options.arrivals.excise.into());
+    told.insert("confidence".into(), options.confidence.into());
+    told.insert("each".into(), options.each.into());
+    Head {
+        schema: LocateDocument::SCHEMA.into(),
+        program: Program::this(),
+        site: Some(site.name.clone()),
+        inputs: Inputs {
+            files: visit.files.clone(),
+            count: visit.captures,
+            site_sha256: Some(site.sha256.clone()),
+        },
+        options: told,
+    }
+}
+
+/// The name of a method on the command line and in documents.
+#[must_use]
+pub fn method_name(method: Method) -> &'static str {
+    match method {
+        Method::Gated => "gated",
+        Method::Correlation => "correlation",
+        Method::Energy => "energy",
+        Method::Akaike => "akaike",
+        Method::Threshold => "threshold",
+    }
+}
+
+/// One source of the document.
+fn source(site: &Site, geometry: &solver::Site, members: &[&Usable<'_>], fix: &Fix) -> SourceResult {
+    let plane = geometry.search.is_plane();
+    let matrix = |m: Matrix3<f64>| std::array::from_fn(|i| std::array::from_fn(|j| m[(i, j)]));
+    let times = members.iter().filter_map(|member| member.capture.time);
+    let names = |indices: &[usize]| indices.iter().map(|&a| geometry.assets[a].name.clone()).collect();
+    SourceResult {
+        captures: members.len(),
+        position_m: fix.position_m.into(),
+        covariance_m2: fix.covariance.map(|c| matrix(c.total_m2())),
+        random_covariance_m2: fix.covariance.map(|c| matrix(c.random_m2)),
+        systematic_covariance_m2: fix.covariance.map(|c| matrix(c.systematic_m2)),
+        ellipse: fix.ellipse.map(|ellipse| Ellipse {
+            confidence: ellipse.confidence,
+            semi_major_m: ellipse.semi_major_m,
+            semi_minor_m: ellipse.semi_minor_m,
+            azimuth_deg: ellipse.azimuth_deg,
+        }),
+        region: Region {
+            confidence: fix.region.confidence,
+            volume_m3: (!plane).then_some(fix.region.measure),
+            area_m2: plane.then_some(fix.region.measure),
+            min_m: fix.region.min_m.into(),
+            max_m: fix.region.max_m.into(),
+            bounded: fix.region.bounded,
+        },
+        bearing: Bearing {
+            from_m: fix.bearing.from_m.into(),
+            azimuth_deg: fix.bearing.azimuth_deg,
+            elevation_deg: fix.bearing.elevation_deg,
+            azimuth_sigma_deg: Some(fix.bearing.azimuth_sigma_deg),
+            elevation_sigma_deg: (!plane).then_some(fix.bearing.elevation_sigma_deg),
+            range_m: Some(fix.bearing.range_m.into()),
+        },
+        fit: Fit {
+            chi_square: fix.fit.chi_square,
+            degrees_of_freedom: fix.fit.degrees_of_freedom,
+            p_value: fix.fit.p_value,
+        },
+        antennas: antennas(site, geometry, members, fix),
+        verdict: Verdict {
+            statement: statement(fix.verdict.statement),
+            assets: names(&fix.verdict.named),
+            probability: fix.verdict.probability,
+        },
+        assets: fix
+            .verdict
+            .assets
+            .iter()
+            .map(|&(asset, probability)| AssetProbability {
+                name: geometry.assets[asset].name.clone(),
+                probability,
+            })
+            .collect(),
+        elsewhere_probability: fix.verdict.elsewhere,
+        alternatives: fix
+            .modes
+            .iter()
+            .skip(1)
+            .map(|mode| Alternative {
+                position_m: mode.minimum.position_m.into(),
+                probability: mode.probability,
+            })
+            .collect(),
+        flags: fix.flags.iter().map(|&flag| flag_name(flag)).collect(),
+        stances: vec![
+            members.first().map_or(crate::site::MAIN_STANCE.into(), |member| member.capture.stance.clone()),
+        ],
+        first: times.clone().min(),
+        last: times.max(),
+        members: members.iter().map(|member| member.capture.capture.clone()).collect(),
+    }
+}
+
+/// One row for every antenna of the site, heard or not.
+fn antennas(site: &Site, geometry: &solver::Site, members: &[&Usable<'_>], fix: &Fix) -> Vec<AntennaResult> {
+    site.geometry
+        .antennas
+        .iter()
+        .enumerate()
+        .map(|(index, antenna)| {
+            let fitted = fix.antennas.iter().find(|fit| fit.antenna == index);
+            let mut snr: Vec<f64> = members
+                .iter()
+                .flat_map(|member| &member.capture.antennas)
+                .filter(|row| row.antenna == index)
+                .filter_map(|row| row.snr_db)
+                .collect();
+            snr.sort_by(f64::total_cmp);
+            AntennaResult {
+                name: antenna.name.clone(),
+                used: fitted.is_some_and(|fit| fit.used),
+                residual_ns: fitted.map(|fit| fit.residual_s * 1e9),
+                sigma_ns: fitted.map(|fit| fit.sigma_s * 1e9),
+                snr_db: snr.get(snr.len() / 2).copied(),
+                line_of_sight: fitted.map_or_else(
+                    || {
+                        let at_m = geometry.antennas[index].position_m;
+                        !geometry.obstacles.iter().any(|o| o.blocks(&at_m, &fix.position_m))
+                    },
+                    |fit| fit.line_of_sight,
+                ),
+            }
+        })
+        .collect()
+}
+
+fn statement(statement: solver::Statement) -> Statement {
+    match statement {
+        solver::Statement::One => Statement::One,
+        solver::Statement::OneOf => Statement::OneOf,
+        solver::Statement::Elsewhere => Statement::Elsewhere,
+        solver::Statement::CannotTell => Statement::CannotTell,
+    }
+}
+
+fn flag_name(flag: solver::Flag) -> Flag {
+    match flag {
+        solver::Flag::FewAntennas => Flag::FewAntennas,
+        solver::Flag::RangeUndetermined => Flag::RangeUndetermined,
+        solver::Flag::MirrorAmbiguity => Flag::MirrorAmbiguity,
+        solver::Flag::AntennaLate => Flag::AntennaLate,
+        solver::Flag::AntennaEarly => Flag::AntennaEarly,
+        solver::Flag::PoorFit => Flag::PoorFit,
+        solver::Flag::RegionTouchesSearchEdge => Flag::RegionTouchesSearchEdge,
+        // A flag of the solver this document has no name for would be the worst kind to lose: it is told as the gravest.
+        _ => Flag::PoorFit,
+    }
+}
