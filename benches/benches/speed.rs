@@ -6,6 +6,7 @@ use std::hint::black_box;
 
 use arcstead::core::{Method, Timing, TimingOptions};
 use arcstead::formats::Recorded;
+use arcstead::solver::nalgebra::Vector3;
 use arcstead::solver::{Arrivals, locate};
 use arcstead::{ArrivalOptions, CaptureTimer, method_name};
 use arcstead_benches::{captures, demo_site};
@@ -44,7 +45,7 @@ fn timing(criterion: &mut Criterion) {
 
 fn solving(criterion: &mut Criterion) {
     let site = demo_site();
-    let source = [7.8, 14.6, 3.4].into();
+    let source = Vector3::new(7.8, 14.6, 3.4);
     let times: Vec<f64> = site
         .geometry
         .antennas

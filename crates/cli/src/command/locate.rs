@@ -1,0 +1,38 @@
+//! `arcstead locate`: from captures, or arrivals tables, to the source.
+
+use std::path::Path;
+
+use arcstead::documents::Document;
+use arcstead::site::Site;
+use arcstead::{LocateOptions, TimedVisit, locate};
+
+use super::read_visit::read_visit;
+use crate::arguments::{Format, LocateArguments};
+use crate::console::Console;
+use crate::failure::Failure;
+use crate::output::Output;
+use crate::{sheet, status, table};
+
+pub(crate) fn run(asked: &LocateArguments, console: &mut Console<'_>) -> Result<u8, Failure> {
+    let site = Site::read(&asked.site)?;
+    let inputs = asked.captures.iter().map(Path::new).chain(asked.arrivals.iter().map(AsRef::as_ref));
+    let output = Output::check(asked.output.output.as_deref(), inputs.chain([asked.site.as_path()]))?;
+    let options =
+        LocateOptions { arrivals: asked.timing.options(), confidence: asked.confidence, each: asked.each };
+    let timed = if asked.arrivals.is_empty() {
+        read_visit(&site, &asked.captures, &options.arrivals, asked.threads, &console.talk)?
+    } else {
+        TimedVisit::from_tables(&site, &asked.arrivals)?
+    };
+    if timed.arrivals.is_empty() {
+        return Err(Failure::NothingRead(timed.unreadable));
+    }
+    let document = locate(&site, &timed, &options)?;
+    let text = match asked.output.format() {
+        Format::Table => table::locate::text(&document, console.glyphs, console.talk.verbose),
+        Format::Json => document.to_json()?,
+        Format::Csv => sheet::locate::text(&document)?,
+    };
+    output.write(&text, console)?;
+    Ok(if document.incomplete { status::INTERRUPTED } else { status::DONE })
+}

@@ -1,0 +1,58 @@
+//! The captures of a visit read and timed, with progress and warnings.
+
+use std::ffi::OsString;
+
+use arcstead::formats::{SkipReason, Skipped};
+use arcstead::site::Site;
+use arcstead::{ArrivalOptions, TimedVisit, Visit};
+
+use crate::console::Talk;
+use crate::failure::Failure;
+use crate::progress::Progress;
+use crate::stance_argument;
+
+/// Reads and times the captures that `arguments` name, and warns of those that cannot be read.
+///
+/// # Errors
+/// When the arguments name nothing that can be read, are of several stances, or no capture at all could be read.
+pub(super) fn read_visit(
+    site: &Site,
+    arguments: &[OsString],
+    options: &ArrivalOptions,
+    threads: Option<u16>,
+    talk: &Talk<'_>,
+) -> Result<TimedVisit, Failure> {
+    let (stance, paths) = stance_argument::split(site, arguments)?;
+    let visit = Visit::open(site, &stance, &paths)?;
+    talk.note_all(&visit.skipped().iter().map(skipped).collect::<Vec<_>>());
+    let progress = Progress::begin(talk, Some(visit.capture_count()));
+    let timed = visit.time(options, threads.map_or(0, usize::from), &progress);
+    progress.end();
+    let timed = timed?;
+    if timed.arrivals.is_empty() {
+        return Err(if timed.incomplete {
+            Failure::StoppedEarly
+        } else {
+            Failure::NothingRead(timed.unreadable)
+        });
+    }
+    let unreadable = timed.unreadable.iter().map(|one| format!("{}: {}", one.capture, one.reason));
+    talk.warn_all(&unreadable.collect::<Vec<_>>());
+    if timed.incomplete {
+        let read = timed.arrivals.len() + timed.unreadable.len();
+        talk.warn(&format!("stopped after {read} of {} captures; the result is of those", timed.captures));
+    }
+    Ok(timed)
+}
+
+fn skipped(skipped: &Skipped) -> String {
+    let reason = match skipped.reason {
+        SkipReason::Hidden => "its name begins with a full stop",
+        SkipReason::Folder => "a folder in a folder; name it by itself if it holds captures",
+        SkipReason::NotAFile => "no regular file",
+        SkipReason::UnknownFormat => "no capture of a known format",
+        SkipReason::Repeated => "named twice",
+        _ => "no capture",
+    };
+    format!("passed over {}: {reason}", skipped.path.display())
+}

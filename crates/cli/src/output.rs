@@ -1,0 +1,174 @@
+//! The result: to stdout, or to a file that appears whole or not at all.
+
+use std::io::{ErrorKind, Write};
+use std::path::{Path, PathBuf};
+
+use crate::console::Console;
+use crate::failure::Failure;
+
+/// Where the result goes.
+#[derive(Debug)]
+pub(crate) struct Output {
+    /// None for stdout.
+    file: Option<PathBuf>,
+}
+
+impl Output {
+    /// Checks before the work what can be checked: a file (`-` is stdout) in a folder that exists, none of the `inputs`.
+    ///
+    /// # Errors
+    /// [`Failure::OutputIsFolder`], [`Failure::OutputIsInput`], [`Failure::Write`] when its folder does not exist.
+    pub(crate) fn check<'i>(
+        asked: Option<&Path>,
+        inputs: impl IntoIterator<Item = &'i Path>,
+    ) -> Result<Self, Failure> {
+        let Some(path) = asked.filter(|path| *path != Path::new("-")) else { return Ok(Self { file: None }) };
+        // A link is followed, so that what it leads to is replaced and not the link.
+        let path = match path.canonicalize() {
+            Ok(real) if real.is_dir() => return Err(Failure::OutputIsFolder { path: path.to_owned() }),
+            Ok(real) => {
+                if inputs.into_iter().any(|input| input.canonicalize().is_ok_and(|input| input == real)) {
+                    return Err(Failure::OutputIsInput { path: path.to_owned() });
+                }
+                real
+            }
+            Err(_) => path.to_owned(),
+        };
+        match std::fs::metadata(folder_of(&path)) {
+            Ok(folder) if folder.is_dir() => Ok(Self { file: Some(path) }),
+            Ok(_) => Err(Failure::Write { path, source: ErrorKind::NotADirectory.into() }),
+            Err(source) => Err(Failure::Write { path, source }),
+        }
+    }
+
+    /// Writes the whole result. Emphasis in `text` is taken out where it would not show.
+    ///
+    /// # Errors
+    /// [`Failure::Write`] or [`Failure::Stdout`]; a reader that closes its pipe has seen what it wanted, which is no error.
+    pub(crate) fn write(&self, text: &str, console: &mut Console<'_>) -> Result<(), Failure> {
+        let emphasis = if self.file.is_some() { console.emphasis_in_files } else { console.emphasis };
+        let plain;
+        let text = if emphasis {
+            text
+        } else {
+            plain = anstream::adapter::strip_str(text).to_string();
+            &plain
+        };
+        match &self.file {
+            None => match console.stdout.write_all(text.as_bytes()).and_then(|()| console.stdout.flush()) {
+                Err(error) if error.kind() == ErrorKind::BrokenPipe => Ok(()),
+                written => written.map_err(Failure::Stdout),
+            },
+            Some(path) => write_file(path, text.as_bytes())
+                .map_err(|source| Failure::Write { path: path.clone(), source }),
+        }
+    }
+}
+
+/// A file that was there is replaced in one step; a device or pipe is written as it is, never replaced.
+fn write_file(path: &Path, bytes: &[u8]) -> std::io::Result<()> {
+    if std::fs::metadata(path).is_ok_and(|found| !found.is_file()) {
+        return std::fs::OpenOptions::new().write(true).open(path)?.write_all(bytes);
+    }
+    let mut builder = tempfile::Builder::new();
+    builder.prefix(".arcstead-");
+    #[cfg(unix)]
+    let everybody = std::os::unix::fs::PermissionsExt::from_mode(0o666);
+    #[cfg(unix)]
+    // Less the process's mask; by default only the owner could read a temporary file.
+    builder.permissions(everybody);
+    let mut file = builder.tempfile_in(folder_of(path))?;
+    file.write_all(bytes)?;
+    file.as_file().sync_all()?;
+    file.persist(path).map_err(|error| error.error)?;
+    Ok(())
+}
+
+fn folder_of(path: &Path) -> &Path {
+    path.parent().filter(|parent| !parent.as_os_str().is_empty()).unwrap_or(Path::new("."))
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use crate::arguments::{Color, TalkArguments};
+
+    struct Closed;
+
+    impl Write for Closed {
+        fn write(&mut self, _: &[u8]) -> std::io::Result<usize> {
+            Err(ErrorKind::BrokenPipe.into())
+        }
+
+        fn flush(&mut self) -> std::io::Result<()> {
+            Ok(())
+        }
+    }
+
+    fn with_console<R>(color: Color, work: impl FnOnce(&mut Console<'_>) -> R) -> (R, String) {
+        let (mut stdout, mut stderr) = (Vec::new(), Vec::new());
+        let talk = TalkArguments { quiet: false, verbose: false, color };
+        let result = work(&mut Console::new(&talk, &mut stdout, &mut stderr));
+        (result, String::from_utf8(stdout).unwrap())
+    }
+
+    fn entries(folder: &Path) -> Vec<String> {
+        let entries = std::fs::read_dir(folder).unwrap();
+        entries.map(|entry| entry.unwrap().file_name().into_string().unwrap()).collect()
+    }
+
+    #[test]
+    fn a_file_is_replaced_whole_and_nothing_else_is_left() {
+        let folder = tempfile::tempdir().unwrap();
+        let path = folder.path().join("result.json");
+        std::fs::write(&path, "something longer that was there before").unwrap();
+        let output = Output::check(Some(&path), []).unwrap();
+        with_console(Color::Auto, |console| output.write("\x1b[1mnew\x1b[0m\n", console).unwrap());
+        assert_eq!(std::fs::read_to_string(&path).unwrap(), "new\n");
+        assert_eq!(entries(folder.path()), ["result.json"]);
+    }
+
+    #[test]
+    fn a_write_that_fails_leaves_the_old_file_and_no_other() {
+        let folder = tempfile::tempdir().unwrap();
+        let inner = folder.path().join("inner");
+        std::fs::create_dir(&inner).unwrap();
+        let output = Output::check(Some(&inner.join("result.json")), []).unwrap();
+        // The folder goes away, and a folder of the file's name comes: the last step must fail.
+        std::fs::create_dir(inner.join("result.json")).unwrap();
+        std::fs::write(inner.join("result.json").join("kept"), "").unwrap();
+        let (failed, _) = with_console(Color::Auto, |console| output.write("new", console).unwrap_err());
+        assert!(matches!(failed, Failure::Write { .. }), "{failed}");
+        assert_eq!(entries(&inner), ["result.json"]);
+    }
+
+    #[test]
+    fn what_cannot_be_written_is_told_before_the_work() {
+        let folder = tempfile::tempdir().unwrap();
+        let input = folder.path().join("site.toml");
+        std::fs::write(&input, "").unwrap();
+        let check = |path: &Path| Output::check(Some(path), [input.as_path()]).unwrap_err();
+        assert!(matches!(check(folder.path()), Failure::OutputIsFolder { .. }));
+        assert!(matches!(check(&input), Failure::OutputIsInput { .. }));
+        assert!(matches!(check(&folder.path().join("none/x.json")), Failure::Write { .. }));
+    }
+
+    #[test]
+    fn stdout_gets_emphasis_only_where_it_was_asked_for() {
+        let output = Output::check(Some(Path::new("-")), []).unwrap();
+        let told =
+            |color| with_console(color, |console| output.write("\x1b[1mnew\x1b[0m", console).unwrap()).1;
+        assert_eq!(told(Color::Never), "new");
+        assert_eq!(told(Color::Always), "\x1b[1mnew\x1b[0m");
+    }
+
+    #[test]
+    fn a_closed_pipe_is_no_error() {
+        let (mut stdout, mut stderr) = (Vec::new(), Vec::new());
+        let talk = TalkArguments { quiet: false, verbose: false, color: Color::Never };
+        let mut closed = Closed;
+        let mut console = Console::new(&talk, &mut stdout, &mut stderr);
+        console.stdout = &mut closed;
+        Output { file: None }.write("text", &mut console).unwrap();
+    }
+}
