@@ -10,7 +10,7 @@ use arcstead::core::{Capture, TimingOptions, summarise};
 use arcstead::documents::{LocateDocument, Statement};
 use arcstead::formats::{ReadSettings, Recorded, find_captures, open_captures};
 use arcstead::site::{MAIN_STANCE, Site};
-use arcstead::{ArrivalOptions, CaptureTimer, LocateOptions, TimedVisit, locate};
+use arcstead::{ArrivalOptions, CaptureTimer, LocateOptions, TimedVisit, Unwatched, locate};
 use arcstead_benches::demo_site;
 use rand::SeedableRng;
 use rand_chacha::ChaCha8Rng;
@@ -117,7 +117,7 @@ fn located(site: &Site, recorded: &[Recorded]) -> LocateDocument {
         arrivals: recorded.iter().map(|one| timer.time(one).expect("the channels of the site")).collect(),
         ..TimedVisit::default()
     };
-    locate(site, &visit, &LocateOptions::default()).expect("one stance")
+    locate(site, &visit, &LocateOptions::default(), &Unwatched).expect("one stance")
 }
 
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]

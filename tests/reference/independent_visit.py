@@ -192,7 +192,7 @@ def truth(site, visit, site_bytes, emissions):
                 "delay_error_ns": round(float(visit.delay_error_ns[i]), 6),
                 "position_m": rounded(visit.antenna_m[i]),
                 "position_error_m": rounded(visit.survey_error_m[i]),
-                "gain": round(float(visit.gain[i]), 6),
+                "gain_db": round(float(20.0 * np.log10(visit.gain[i] / visit.gain.mean())), 4),
             }
             for i, name in enumerate(site.names)
         ],

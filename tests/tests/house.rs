@@ -1,5 +1,7 @@
 //! The house stands as DEVELOPERS.md draws it: who may know whom, and rooms that are read in one sitting.
 
+#![allow(clippy::unwrap_used, reason = "a test that unwraps fails with the line it stands on")]
+
 use std::collections::BTreeSet;
 use std::path::{Path, PathBuf};
 
@@ -19,9 +21,10 @@ fn manifest(folder: &str) -> toml::Table {
 fn dependencies(folder: &str) -> BTreeSet<String> {
     let manifest = manifest(folder);
     assert!(!manifest.contains_key("build-dependencies"), "{folder} has a build script's dependencies");
-    manifest.get("dependencies").and_then(toml::Value::as_table).map_or_else(BTreeSet::new, |table| {
-        table.keys().cloned().collect()
-    })
+    manifest
+        .get("dependencies")
+        .and_then(toml::Value::as_table)
+        .map_or_else(BTreeSet::new, |table| table.keys().cloned().collect())
 }
 
 #[test]
@@ -69,7 +72,9 @@ fn rooms_do_not_know_what_they_must_not() {
 
 #[test]
 fn every_member_takes_the_shared_lints_and_versions() {
-    for folder in ["crates/core", "crates/solver", "crates/sim", "crates/arcstead", "crates/cli", "tests", "benches"] {
+    for folder in
+        ["crates/core", "crates/solver", "crates/sim", "crates/arcstead", "crates/cli", "tests", "benches"]
+    {
         let manifest = manifest(folder);
         assert_eq!(manifest["lints"]["workspace"].as_bool(), Some(true), "{folder}");
         for table in ["dependencies", "dev-dependencies"] {

@@ -3,6 +3,8 @@
 //! Seeds are fixed. A bound is 4.9 standard errors, which a correct program misses less than once in 10^6; the
 //! numbers of trials are such that sigmas wrong by 15 % are found out.
 
+#![allow(clippy::unwrap_used, reason = "a test that unwraps fails with the line it stands on")]
+
 use arcstead_solver::likelihood::{Evaluator, Likelihood};
 use arcstead_solver::nalgebra::{Vector2, Vector3};
 use arcstead_solver::{
@@ -105,7 +107,14 @@ fn regions_hold_the_truth_as_often_as_they_say() {
     let mut nearby = bay();
     nearby.assets.clear();
     let mut hexagon = site(
-        &[[0.0, 0.0, 2.0], [16.0, 1.0, 4.5], [15.0, 14.0, 1.5], [1.0, 13.0, 5.0], [8.0, -3.0, 3.0], [9.0, 18.0, 1.5]],
+        &[
+            [0.0, 0.0, 2.0],
+            [16.0, 1.0, 4.5],
+            [15.0, 14.0, 1.5],
+            [1.0, 13.0, 5.0],
+            [8.0, -3.0, 3.0],
+            [9.0, 18.0, 1.5],
+        ],
         nearby.search,
     );
     hexagon.obstacles.clear();
@@ -160,11 +169,17 @@ fn verdicts_are_right_as_often_as_they_say() {
             let expected = stated / count;
             let error = (expected * (1.0 - expected) / count).sqrt();
             let found = right / count;
-            assert!((found - expected).abs() < (4.9 * error).max(0.02), "{expected} told, {found} found in {count}");
+            assert!(
+                (found - expected).abs() < (4.9 * error).max(0.02),
+                "{expected} told, {found} found in {count}"
+            );
         }
     }
     assert!(named_alone > 300, "too few were named for the test to mean anything: {named_alone}");
-    assert!(f64::from(confident_and_wrong) < 0.2 * f64::from(named_alone), "{confident_and_wrong} of {named_alone}");
+    assert!(
+        f64::from(confident_and_wrong) < 0.2 * f64::from(named_alone),
+        "{confident_and_wrong} of {named_alone}"
+    );
 }
 
 fn in_capsule(asset: &Asset, rng: &mut ChaCha8Rng) -> Vector3<f64> {
@@ -186,7 +201,14 @@ fn stated_covariances_are_those_found() {
     // Inside a distributed array the problem is nearly linear: the Mahalanobis distance of the truth is chi-square
     // with 3 degrees, mean 3, variance 6.
     let site = site(
-        &[[0.0, 0.0, 2.0], [16.0, 1.0, 4.5], [15.0, 14.0, 1.5], [1.0, 13.0, 5.0], [8.0, 7.0, 9.5], [9.0, 18.0, 1.5]],
+        &[
+            [0.0, 0.0, 2.0],
+            [16.0, 1.0, 4.5],
+            [15.0, 14.0, 1.5],
+            [1.0, 13.0, 5.0],
+            [8.0, 7.0, 9.5],
+            [9.0, 18.0, 1.5],
+        ],
         bay().search,
     );
     let mut rng = ChaCha8Rng::seed_from_u64(43);
@@ -210,11 +232,8 @@ fn a_place_in_shadow_gains_nothing_from_it() {
     // of the densities, and by the same amount whatever the unit of time.
     let mut site = bay();
     let source = Vector3::new(10.0, 10.0, 5.0);
-    let times: Vec<f64> = site
-        .antennas
-        .iter()
-        .map(|a| (a.position_m - source).norm() / site.air.speed_m_per_s)
-        .collect();
+    let times: Vec<f64> =
+        site.antennas.iter().map(|a| (a.position_m - source).norm() / site.air.speed_m_per_s).collect();
     let value = |site: &Site, unit: f64| {
         let times: Vec<f64> = times.iter().map(|time| time * unit).collect();
         let mut site = site.clone();
@@ -224,7 +243,7 @@ fn a_place_in_shadow_gains_nothing_from_it() {
             antenna.delay_sigma_s *= unit;
             antenna.response_sigma_s *= unit;
         }
-        let arrivals = Arrivals::independent(&times, &vec![TIMING_SIGMA_S * unit; 4]);
+        let arrivals = Arrivals::independent(&times, &[TIMING_SIGMA_S * unit; 4]);
         let likelihood = Likelihood::new(&site, &arrivals).unwrap();
         // Against a clear place that explains the times badly, so that only differences count.
         let mut evaluator = Evaluator::new(&likelihood);

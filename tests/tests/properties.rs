@@ -1,9 +1,9 @@
 //! What must not change an answer, and what must change it alike.
 
+#![allow(clippy::unwrap_used, reason = "a test that unwraps fails with the line it stands on")]
+
 use arcstead_solver::nalgebra::{Rotation3, Vector3};
-use arcstead_solver::{
-    Air, Antenna, Arrivals, Asset, Fix, PositionSigma, Priors, SearchBox, Site, locate,
-};
+use arcstead_solver::{Air, Antenna, Arrivals, Asset, Fix, PositionSigma, Priors, SearchBox, Site, locate};
 use proptest::prelude::*;
 
 const SPEED: f64 = 299_698_053.1;

@@ -3,14 +3,16 @@
 //! `tests/reference/vectors.toml` was made by `tests/reference/make_vectors.py` with the versions it names; the
 //! tolerances beside each table are told in `tests/reference/README.md`.
 
+#![allow(clippy::unwrap_used, reason = "a test that unwraps fails with the line it stands on")]
+
 use approx::assert_relative_eq;
 use arcstead_core::{ButterworthBandPass, GeneralisedCorrelation, Weighting};
 use arcstead_solver::least_squares::refine;
 use arcstead_solver::likelihood::{Evaluator, Likelihood};
 use arcstead_solver::nalgebra::{DMatrix, DVector, Vector3};
 use arcstead_solver::{
-    Air, Antenna, Arrivals, PositionSigma, Priors, SearchBox, Site, chi_square_exceedance, chi_square_quantile,
-    covariance,
+    Air, Antenna, Arrivals, PositionSigma, Priors, SearchBox, Site, chi_square_exceedance,
+    chi_square_quantile, covariance,
 };
 use toml::{Table, Value};
 
@@ -82,7 +84,11 @@ fn correlation_with_its_lags() {
         samples
     };
     let greatest_lag = length - 1;
-    let found = GeneralisedCorrelation::plan(length, Weighting::Plain).process(&padded(&a), &padded(&b), greatest_lag);
+    let found = GeneralisedCorrelation::plan(length, Weighting::Plain).process(
+        &padded(&a),
+        &padded(&b),
+        greatest_lag,
+    );
     let expected = numbers(&table["values"]);
     let size = greatest(&expected);
     let mut compared = 0;
@@ -126,7 +132,10 @@ fn least_squares_positions() {
             assets: vec![],
             obstacles: vec![],
             air: Air::from_refractivity(315.0),
-            search: SearchBox { min_m: Vector3::new(-100.0, -100.0, -z), max_m: Vector3::new(100.0, 100.0, z) },
+            search: SearchBox {
+                min_m: Vector3::new(-100.0, -100.0, -z),
+                max_m: Vector3::new(100.0, 100.0, z),
+            },
             priors: Priors::default(),
         };
         let covariance_ns2 = rows(&table["covariance_ns2"]);

@@ -155,6 +155,42 @@ pub(crate) fn of_strays(stray: usize, usable: usize) -> Option<String> {
     })
 }
 
+/// Which antennas missed the pulse in the captures that could not be solved for want of arrivals.
+pub(crate) fn of_missed(site: &Site, captures: &[CaptureArrivals], used: usize) -> Option<String> {
+    let partly: Vec<&CaptureArrivals> = captures
+        .iter()
+        .filter(|capture| {
+            let needed = site.geometry.search.unknowns() + 1;
+            (1..needed).contains(&capture.received())
+        })
+        .collect();
+    // A few lost captures need no explanation.
+    if 10 * partly.len() <= used {
+        return None;
+    }
+    let missed: Vec<String> = site
+        .geometry
+        .antennas
+        .iter()
+        .enumerate()
+        .filter_map(|(index, antenna)| {
+            let count = partly
+                .iter()
+                .filter(|capture| {
+                    capture.antennas.iter().any(|row| row.antenna == index && row.arrival_s.is_none())
+                })
+                .count();
+            (count > 0).then(|| format!("{} ({count})", antenna.name))
+        })
+        .collect();
+    Some(format!(
+        "{} captures hold a pulse on too few antennas to be used; it was missed by {}. A stronger antenna, a nearer stand or \
+         a lower trigger level there would use more of them.",
+        partly.len(),
+        missed.join(", ")
+    ))
+}
+
 /// No set of captures agrees.
 pub(crate) fn of_no_agreement(usable: usize) -> Option<String> {
     (usable > 0).then(|| {

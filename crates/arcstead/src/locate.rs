@@ -1,33 +1,33 @@
 //! From the arrivals of a visit to the sources told: combining, solving, and the document.
 
-use arcstead_core::Method;
 use arcstead_solver::{self as solver, Arrivals, Combined, Fix, SolveError, combine, consensus};
 use nalgebra::{DVector, Matrix3};
+use rayon::prelude::*;
 
 use crate::arrivals_table::CaptureArrivals;
 use crate::cautions;
 use crate::documents::{
-    Alternative, AntennaResult, AssetProbability, Bearing, CaptureCounts, Document, Ellipse, Fit, Flag, Head,
-    Inputs, LocateDocument, Program, Region, RejectedCapture, SourceResult, Statement, Verdict,
+    Alternative, AntennaResult, AssetProbability, Bearing, CaptureCounts, Document, Ellipse, Fit, Flag,
+    LocateDocument, Region, RejectedCapture, SourceResult, Statement, Verdict,
 };
+use crate::provenance::head;
 use crate::site::Site;
-use crate::timer::ArrivalOptions;
-use crate::visit::{TimedVisit, VisitError};
+use crate::visit::{TimedVisit, VisitError, Watch, pool};
 
 /// How sources are told.
 #[derive(Debug, Clone, Copy, PartialEq)]
 pub struct LocateOptions {
-    /// How the arrival times were found; told in the document.
-    pub arrivals: ArrivalOptions,
     /// Probability that the regions hold the source, between 0 and 1 (default 0.95).
     pub confidence: f64,
     /// Whether every capture is solved by itself (default false).
     pub each: bool,
+    /// Threads that solve captures by themselves (default 0: one for each processor). The result does not depend on it.
+    pub threads: usize,
 }
 
 impl Default for LocateOptions {
     fn default() -> Self {
-        Self { arrivals: ArrivalOptions::default(), confidence: 0.95, each: false }
+        Self { confidence: 0.95, each: false, threads: 0 }
     }
 }
 
@@ -53,12 +53,16 @@ struct Told {
 ///
 /// No pulse, or no place that explains the arrivals, is a result: a document without sources.
 ///
+/// `watch` is told of every capture solved by itself, and may stop that.
+///
 /// # Errors
-/// [`VisitError::SeveralStances`] when the captures were not all taken from one stance.
+/// [`VisitError::SeveralStances`] when the captures were not all taken from one stance, [`VisitError::Threads`] when the
+/// threads cannot be started.
 pub fn locate(
     site: &Site,
     visit: &TimedVisit,
     options: &LocateOptions,
+    watch: &impl Watch,
 ) -> Result<LocateDocument, VisitError> {
     let stance = visit.stance()?;
     let geometry = site.geometry_of_stance(stance).unwrap_or_else(|| site.geometry.clone());
@@ -73,29 +77,53 @@ pub fn locate(
             Err(reason) => reject(&mut told, capture, reason),
         }
     }
+    let mut incomplete = visit.incomplete;
     if options.each {
-        for one in &usable {
-            match solver::locate(&geometry, &one.arrivals, options.confidence) {
-                Ok(fix) => {
-                    let members = [one];
-                    told.sources.push(source(site, &geometry, &members, &fix));
+        let solved = each(&geometry, &usable, options, watch)?;
+        for (one, fix) in usable.iter().zip(solved) {
+            match fix {
+                Some(Ok(fix)) => {
+                    told.sources.push(source(site, &geometry, &[one], &fix));
                     told.counts.used += 1;
                 }
-                Err(error) => reject(&mut told, one.capture, error.to_string()),
+                Some(Err(error)) => reject(&mut told, one.capture, error.to_string()),
+                None => incomplete = true,
             }
         }
         told.cautions.extend(cautions::of_each(&told.sources));
     } else {
         combined_source(site, &geometry, &usable, options, &mut told);
     }
+    told.cautions.extend(cautions::of_missed(site, &visit.arrivals, told.counts.used));
     told.cautions.extend(cautions::of_every_result());
+    let mut head = head(LocateDocument::SCHEMA, site, visit);
+    head.options.insert("confidence".into(), options.confidence.into());
+    head.options.insert("each".into(), options.each.into());
     Ok(LocateDocument {
-        head: head(site, visit, options),
-        incomplete: visit.incomplete,
+        head,
+        incomplete,
         captures: told.counts,
         sources: told.sources,
         cautions: told.cautions,
     })
+}
+
+/// Solves every capture by itself, in parallel; none for those that were not begun when the watch said stop.
+fn each(
+    geometry: &solver::Site,
+    usable: &[Usable<'_>],
+    options: &LocateOptions,
+    watch: &impl Watch,
+) -> Result<Vec<Option<Result<Fix, SolveError>>>, VisitError> {
+    let solve = |one: &Usable<'_>| {
+        if watch.stop() {
+            return None;
+        }
+        let fix = solver::locate(geometry, &one.arrivals, options.confidence);
+        watch.capture_done();
+        Some(fix)
+    };
+    Ok(pool(options.threads)?.install(|| usable.par_iter().with_max_len(1).map(solve).collect()))
 }
 
 fn reject(told: &mut Told, capture: &CaptureArrivals, reason: String) {
@@ -111,15 +139,10 @@ fn usable_arrivals(geometry: &solver::Site, capture: &CaptureArrivals) -> Result
         return Err("no pulse above the noise".into());
     }
     if received.len() < needed {
-        let names: Vec<&str> = received
-            .iter()
-            .map(|&row| geometry.antennas[capture.antennas[row].antenna].name.as_str())
-            .collect();
         return Err(format!(
-            "pulse on {} of {} antennas ({}); a place needs at least {needed}",
+            "pulse on {} of {} antennas; a place needs at least {needed}",
             received.len(),
-            geometry.antennas.len(),
-            names.join(", ")
+            geometry.antennas.len()
         ));
     }
     Ok(Arrivals {
@@ -183,39 +206,6 @@ fn no_place(
             "{captures} captures agree with each other, but no place can be computed: {error}. {}",
             reasons.join(" ")
         )
-    }
-}
-
-fn head(site: &Site, visit: &TimedVisit, options: &LocateOptions) -> Head {
-    let mut told = serde_json::Map::new();
-    told.insert("method".into(), method_name(options.arrivals.method).into());
-    let band_mhz = options.arrivals.band_of(site).map(|(low, high)| vec![low / 1e6, high / 1e6]);
-    told.insert("band".into(), band_mhz.into());
-    told.insert("excise".into(), options.arrivals.excise.into());
-    told.insert("confidence".into(), options.confidence.into());
-    told.insert("each".into(), options.each.into());
-    Head {
-        schema: LocateDocument::SCHEMA.into(),
-        program: Program::this(),
-        site: Some(site.name.clone()),
-        inputs: Inputs {
-            files: visit.files.clone(),
-            count: visit.captures,
-            site_sha256: Some(site.sha256.clone()),
-        },
-        options: told,
-    }
-}
-
-/// The name of a method on the command line and in documents.
-#[must_use]
-pub fn method_name(method: Method) -> &'static str {
-    match method {
-        Method::Gated => "gated",
-        Method::Correlation => "correlation",
-        Method::Energy => "energy",
-        Method::Akaike => "akaike",
-        Method::Threshold => "threshold",
     }
 }
 

@@ -8,7 +8,7 @@ use std::sync::Mutex;
 use rayon::prelude::*;
 use thiserror::Error;
 
-use crate::arrivals_table::{ArrivalsReader, ArrivalsTableError, CaptureArrivals};
+use crate::arrivals_table::{ArrivalsReader, ArrivalsTableError, CaptureArrivals, read_json_file};
 use crate::documents::RejectedCapture;
 use crate::error_chain::told;
 use crate::formats::{CaptureFile, FormatError, ReadSettings, Skipped, find_captures, open_captures};
@@ -104,6 +104,8 @@ impl VisitFile {
 pub struct TimedVisit {
     /// Files and tables it came from, as they were named.
     pub files: Vec<String>,
+    /// How the arrivals were found; none when they were read from tables.
+    pub timing: Option<ArrivalOptions>,
     /// Captures there are, read or not.
     pub captures: usize,
     /// Arrivals of every capture that could be read.
@@ -170,10 +172,7 @@ impl<'s> Visit<'s> {
         threads: usize,
         watch: &impl Watch,
     ) -> Result<TimedVisit, VisitError> {
-        let pool = rayon::ThreadPoolBuilder::new()
-            .num_threads(threads)
-            .build()
-            .map_err(|error| VisitError::Threads(error.to_string()))?;
+        let pool = pool(threads)?;
         let places: Vec<(usize, usize)> = self
             .files
             .iter()
@@ -205,6 +204,7 @@ impl<'s> Visit<'s> {
         });
         let mut timed = TimedVisit {
             files: self.files.iter().map(|file| file.path.display().to_string()).collect(),
+            timing: Some(*options),
             captures: places.len() + self.unreadable.len(),
             unreadable: self.unreadable.clone(),
             ..TimedVisit::default()
@@ -236,7 +236,7 @@ impl<'s> Visit<'s> {
 }
 
 impl TimedVisit {
-    /// Reads arrivals tables in place of captures.
+    /// Reads arrivals tables in place of captures: JSON where the name ends so, else CSV.
     ///
     /// # Errors
     /// [`VisitError`] when the site is not ready, a table cannot be read, or names a stance the site does not have.
@@ -244,8 +244,12 @@ impl TimedVisit {
         site.ready_to_locate()?;
         let mut timed = Self::default();
         for path in tables {
-            for capture in ArrivalsReader::open(path, site)? {
-                timed.arrivals.push(capture?);
+            if path.extension().is_some_and(|ending| ending.eq_ignore_ascii_case("json")) {
+                timed.arrivals.extend(read_json_file(path, site)?);
+            } else {
+                for capture in ArrivalsReader::open(path, site)? {
+                    timed.arrivals.push(capture?);
+                }
             }
             timed.files.push(path.display().to_string());
         }
@@ -272,6 +276,14 @@ impl TimedVisit {
             }
         }
     }
+}
+
+/// A pool of this many threads (0: one for each processor).
+pub(crate) fn pool(threads: usize) -> Result<rayon::ThreadPool, VisitError> {
+    rayon::ThreadPoolBuilder::new()
+        .num_threads(threads)
+        .build()
+        .map_err(|error| VisitError::Threads(error.to_string()))
 }
 
 fn no_such_stance(site: &Site, name: &str) -> VisitError {

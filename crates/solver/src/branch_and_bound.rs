@@ -19,7 +19,7 @@ use nalgebra::Vector3;
 
 use crate::domain::{Domain, Overlap};
 use crate::error::SolveError;
-use crate::likelihood::{BoxBound, Evaluator};
+use crate::likelihood::{BoxBound, Evaluator, Shadows};
 
 /// How far -2 ln likelihood may lie above the best before a place is dropped: a share below 2e-5 of a Gaussian
 /// posterior in space.
@@ -121,7 +121,7 @@ pub(crate) fn search(
     let mut best = known_best;
     let mut queue = BinaryHeap::new();
     let mut coarse = Vec::new();
-    enqueue(evaluator, domain, &mut queue, &mut best, min_m + half_m, half_m)?;
+    enqueue(evaluator, domain, &mut queue, &mut best, None, (min_m + half_m, half_m))?;
     let mut examined = 1;
     while let Some(waiting) = queue.pop() {
         if waiting.bound.least > best + MARGIN {
@@ -139,15 +139,16 @@ pub(crate) fn search(
             for side in [-1.0, 1.0] {
                 let mut centre_m = waiting.centre_m;
                 centre_m[axis] += side * half_m[axis];
-                enqueue(evaluator, domain, &mut queue, &mut best, centre_m, half_m)?;
+                let around = Some(waiting.bound.shadows);
+                enqueue(evaluator, domain, &mut queue, &mut best, around, (centre_m, half_m))?;
                 examined += 1;
             }
         }
     }
     let resolved = coarse.iter().all(|waiting| is_fine(waiting, domain, finest_m));
-    let mut cells = Vec::with_capacity(8 * coarse.len());
+    let mut cells = Vec::new();
     for waiting in coarse.iter().filter(|waiting| waiting.bound.least <= best + MARGIN) {
-        quarter(evaluator, domain, waiting, &mut cells)?;
+        quarter(evaluator, domain, waiting, best + MARGIN, &mut cells)?;
     }
     Ok(Search { cells, resolved })
 }
@@ -157,14 +158,14 @@ fn enqueue(
     domain: &impl Domain,
     queue: &mut BinaryHeap<Waiting>,
     best: &mut f64,
-    centre_m: Vector3<f64>,
-    half_m: Vector3<f64>,
+    around: Option<Shadows>,
+    (centre_m, half_m): (Vector3<f64>, Vector3<f64>),
 ) -> Result<(), SolveError> {
     let overlap = domain.overlap(&centre_m, &half_m);
     if overlap == Overlap::None {
         return Ok(());
     }
-    let bound = evaluator.bound(&centre_m, &half_m);
+    let bound = evaluator.bound(&centre_m, &half_m, around);
     if bound.least > *best + MARGIN {
         return Ok(());
     }
@@ -196,11 +197,13 @@ fn split_axis(waiting: &Waiting) -> usize {
     if greatest > 0.5 * FINE_STEP && waiting.half_m[by_step] > 0.0 { by_step } else { waiting.half_m.imax() }
 }
 
-/// Cuts a box into halves along each side and keeps the parts whose centres are in the body.
+/// Cuts a box into halves along each side and keeps the parts whose centres are in the body, but for those in which
+/// surely no place is within the margin.
 fn quarter(
     evaluator: &mut Evaluator<'_>,
     domain: &impl Domain,
     waiting: &Waiting,
+    ceiling: f64,
     cells: &mut Vec<Cell>,
 ) -> Result<(), SolveError> {
     let half_m = waiting.half_m / 2.0;
@@ -208,8 +211,15 @@ fn quarter(
     for corner in 0..if flat { 4_u8 } else { 8 } {
         let sign = |axis: u8| if corner >> axis & 1 == 1 { 1.0 } else { -1.0 };
         let centre_m = waiting.centre_m + Vector3::new(sign(0), sign(1), sign(2)).component_mul(&half_m);
-        if domain.contains(&centre_m) {
-            let minus_two_ln = evaluator.at(&centre_m)?.minus_two_ln;
+        if !domain.contains(&centre_m) {
+            continue;
+        }
+        let bound = evaluator.bound(&centre_m, &half_m, Some(waiting.bound.shadows));
+        if bound.least <= ceiling {
+            let minus_two_ln = match bound.at_centre {
+                Some(value) => value,
+                None => evaluator.at(&centre_m)?.minus_two_ln,
+            };
             cells.push(Cell { centre_m, half_m, minus_two_ln });
         }
     }
@@ -343,7 +353,7 @@ mod tests {
             for _ in 0..20 {
                 let half_m = side * 0.5 * 0.5_f64.powi(rng.random_range(0..9));
                 let centre_m = site.search.min_m + side.map(|s| s * rng.random_range(0.0..1.0));
-                let bound = evaluator.bound(&centre_m, &half_m);
+                let bound = evaluator.bound(&centre_m, &half_m, None);
                 for _ in 0..20 {
                     let at_m = centre_m + half_m.map(|h| h * rng.random_range(-1.0..1.0));
                     let value = evaluator.at(&at_m).unwrap().minus_two_ln;

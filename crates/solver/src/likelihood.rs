@@ -61,6 +61,15 @@ pub struct Value {
 /// Which antennas are in shadow, one bit each.
 pub(crate) type Mask = u64;
 
+/// Which antennas are in shadow over a box.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub(crate) struct Shadows {
+    /// Those that are so in some places of the box and perhaps not in others.
+    pub(crate) part: Mask,
+    /// Those that are so in every place of the box.
+    pub(crate) whole: Mask,
+}
+
 impl Likelihood {
     /// Gathers what one solve needs.
     ///
@@ -169,7 +178,7 @@ impl Likelihood {
     }
 
     /// Which antennas may be in shadow, and which surely are, over a box.
-    pub(crate) fn shadows_over(&self, centre_m: &Vector3<f64>, half_m: &Vector3<f64>) -> (Mask, Mask) {
+    fn shadows_over(&self, centre_m: &Vector3<f64>, half_m: &Vector3<f64>) -> Shadows {
         let (mut part, mut whole) = (0, 0);
         for (index, antenna_m) in self.positions_m.iter().enumerate() {
             for prism in &self.prisms {
@@ -180,7 +189,7 @@ impl Likelihood {
                 }
             }
         }
-        (part & !whole, whole)
+        Shadows { part: part & !whole, whole }
     }
 
     fn systematic_m2(&self, shadowed: Mask, position: impl Fn(&PositionSigma, usize) -> f64) -> Vec<f64> {
@@ -363,12 +372,21 @@ impl<'a> Evaluator<'a> {
         Ok(self.residuals.iter().map(|residual| residual - common).collect())
     }
 
-    /// A lower bound of -2 ln likelihood over the box, and how far the whitened residuals move within it at
+    /// A lower bound of -2 ln likelihood over the box (`around`: the shadows over a box it lies in), and how far the whitened residuals move within it at
     /// most; see [`crate::branch_and_bound`] for the argument.
-    pub(crate) fn bound(&mut self, centre_m: &Vector3<f64>, half_m: &Vector3<f64>) -> BoxBound {
+    pub(crate) fn bound(
+        &mut self,
+        centre_m: &Vector3<f64>,
+        half_m: &Vector3<f64>,
+        around: Option<Shadows>,
+    ) -> BoxBound {
         let likelihood = self.likelihood;
-        let (part, whole) =
-            if likelihood.prisms.is_empty() { (0, 0) } else { likelihood.shadows_over(centre_m, half_m) };
+        // Inside a box with the same shadows all over there is nothing to find out.
+        let shadows = match around {
+            Some(shadows) if shadows.part == 0 => shadows,
+            _ => likelihood.shadows_over(centre_m, half_m),
+        };
+        let Shadows { part, whole } = shadows;
         self.travel(centre_m, whole);
         let key = (whole, part);
         let Some(weights) = self.take_bounding_weights(key) else { return BoxBound::UNKNOWN };
@@ -400,7 +418,7 @@ impl<'a> Evaluator<'a> {
         self.bounding.insert(key, weights);
         // What is dropped from the bound still moves the likelihood where it is clear.
         let steps = if uniform { steps } else { self.clear_steps(whole, half_m).unwrap_or(steps) };
-        BoxBound { least: least_norm * least_norm + excess, steps, curvature, uniform, at_centre }
+        BoxBound { least: least_norm * least_norm + excess, steps, curvature, shadows, at_centre }
     }
 
     fn take_bounding_weights(&mut self, key: (Mask, Mask)) -> Option<Weights> {
@@ -505,16 +523,21 @@ pub(crate) struct BoxBound {
     pub(crate) steps: [f64; 3],
     /// How far they may move beyond first order.
     pub(crate) curvature: f64,
-    /// Whether the same antennas are in shadow all over the box.
-    pub(crate) uniform: bool,
+    /// Which antennas are in shadow over the box.
+    pub(crate) shadows: Shadows,
     /// -2 ln likelihood of the centre, where it came for nothing.
     pub(crate) at_centre: Option<f64>,
 }
 
 impl BoxBound {
     /// Of a box of which nothing can be said.
-    const UNKNOWN: Self =
-        Self { least: 0.0, steps: [f64::INFINITY; 3], curvature: 0.0, uniform: false, at_centre: None };
+    const UNKNOWN: Self = Self {
+        least: 0.0,
+        steps: [f64::INFINITY; 3],
+        curvature: 0.0,
+        shadows: Shadows { part: Mask::MAX, whole: 0 },
+        at_centre: None,
+    };
 }
 
 fn norm(values: &[f64]) -> f64 {

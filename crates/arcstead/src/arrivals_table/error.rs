@@ -5,6 +5,8 @@ use std::path::PathBuf;
 
 use thiserror::Error;
 
+use crate::documents::ARRIVALS_SCHEMA;
+
 use super::row::COLUMNS;
 use crate::capture_time::CaptureTimeError;
 
@@ -58,6 +60,9 @@ pub enum TableMistake {
     /// It is no JSON of the expected form.
     #[error("not JSON as expected: {0}")]
     Json(serde_json::Error),
+    /// Another JSON document.
+    #[error("it says schema `{found}`; expected `{ARRIVALS_SCHEMA}`")]
+    Schema { found: String },
     /// A column that is needed is not there.
     #[error(
         "there is no column `{column}`{}; needed are capture,antenna,arrival_s,sigma_s, separated by commas",

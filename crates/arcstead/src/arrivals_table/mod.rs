@@ -3,7 +3,8 @@
 //! Columns: `capture,time,stance,antenna,arrival_s,sigma_s,snr_db,delay_ns,covariance_s2,flags`, one row per capture and
 //! antenna, the rows of a capture one after the other. When read, columns may stand in any order, and only `capture`,
 //! `antenna`, `arrival_s` and `sigma_s` are needed; other columns are passed over, unless one is so near to a known
-//! name that it must be meant. JSON is an array of objects with the same names, `covariance_s2` a list of numbers and
+//! name that it must be meant. JSON is a document (schema
+//! `arcstead/arrivals/1`) whose `arrivals` are objects with the same names, `covariance_s2` a list of numbers and
 //! `flags` a list of names.
 //!
 //! Numbers are written so that they read back exactly. `delay_ns` is what was subtracted, to twelve digits; on reading it
@@ -27,7 +28,7 @@ mod write;
 
 pub use capture_arrivals::{AntennaArrival, CaptureArrivals};
 pub use error::{ArrivalsTableError, TableMistake, TablePlace};
-pub use read::{ArrivalsReader, read_json};
+pub use read::{ArrivalsReader, read_json, read_json_file};
 pub use write::ArrivalsWriter;
 
 #[cfg(test)]

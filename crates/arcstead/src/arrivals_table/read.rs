@@ -5,11 +5,13 @@ use std::io::Read;
 use std::path::{Path, PathBuf};
 
 use csv::{ReaderBuilder, StringRecord};
+use serde::Deserialize;
 
 use super::capture_arrivals::CaptureArrivals;
 use super::error::{ArrivalsTableError, TableMistake, TablePlace};
 use super::gather::Gatherer;
 use super::row::{Header, Row};
+use crate::documents::ARRIVALS_SCHEMA;
 use crate::site::Site;
 
 /// Reads an arrivals table in CSV: an iterator of captures, which ends with the first mistake. Only the rows of one
@@ -42,13 +44,13 @@ impl<'s> ArrivalsReader<'s, File> {
     /// # Errors
     /// When the file cannot be read or its header is no arrivals table's.
     pub fn open(path: &Path, site: &'s Site) -> Result<Self, ArrivalsTableError> {
-        let failed =
-            |mistake| ArrivalsTableError { path: path.to_owned(), place: TablePlace::Whole, mistake };
-        // Asked before opening: opening a pipe would wait for its other end.
-        if !std::fs::metadata(path).map_err(|error| failed(TableMistake::File(error)))?.is_file() {
-            return Err(failed(TableMistake::NotAFile));
-        }
-        Self::new(File::open(path).map_err(|error| failed(TableMistake::File(error)))?, path, site)
+        regular(path)?;
+        let file = File::open(path).map_err(|error| ArrivalsTableError {
+            path: path.to_owned(),
+            place: TablePlace::Whole,
+            mistake: TableMistake::File(error),
+        })?;
+        Self::new(file, path, site)
     }
 }
 
@@ -112,19 +114,53 @@ impl<R: Read> Iterator for ArrivalsReader<'_, R> {
     }
 }
 
+/// The part of a JSON table that is read.
+#[derive(Deserialize)]
+struct JsonTable {
+    schema: String,
+    arrivals: Vec<Row>,
+}
+
 /// Reads an arrivals table in JSON, whole; `name` stands for the table in errors.
 ///
 /// # Errors
 /// [`ArrivalsTableError`] with the first mistake.
 pub fn read_json(text: &str, name: &str, site: &Site) -> Result<Vec<CaptureArrivals>, ArrivalsTableError> {
     let wrong = |(place, mistake)| ArrivalsTableError { path: name.into(), place, mistake };
-    let rows: Vec<Row> =
+    let table: JsonTable =
         serde_json::from_str(text).map_err(|error| wrong((TablePlace::Whole, TableMistake::Json(error))))?;
+    if table.schema != ARRIVALS_SCHEMA {
+        return Err(wrong((TablePlace::Whole, TableMistake::Schema { found: table.schema })));
+    }
     let mut gatherer = Gatherer::new(site);
     let mut captures = Vec::new();
-    for (index, row) in rows.into_iter().enumerate() {
+    for (index, row) in table.arrivals.into_iter().enumerate() {
         captures.extend(gatherer.take(TablePlace::Row(index + 1), row).map_err(wrong)?);
     }
     captures.extend(gatherer.finish().map_err(wrong)?);
     Ok(captures)
+}
+
+/// Reads an arrivals table in JSON from a file, whole.
+///
+/// # Errors
+/// [`ArrivalsTableError`] when the file cannot be read, and with the first mistake.
+pub fn read_json_file(path: &Path, site: &Site) -> Result<Vec<CaptureArrivals>, ArrivalsTableError> {
+    regular(path)?;
+    let text = std::fs::read_to_string(path).map_err(|error| ArrivalsTableError {
+        path: path.to_owned(),
+        place: TablePlace::Whole,
+        mistake: TableMistake::File(error),
+    })?;
+    read_json(&text, &path.display().to_string(), site)
+}
+
+/// Refuses what is no regular file. Asked before opening: opening a pipe would wait for its other end.
+fn regular(path: &Path) -> Result<(), ArrivalsTableError> {
+    let mistake = match std::fs::metadata(path) {
+        Ok(metadata) if metadata.is_file() => return Ok(()),
+        Ok(_) => TableMistake::NotAFile,
+        Err(error) => TableMistake::File(error),
+    };
+    Err(ArrivalsTableError { path: path.to_owned(), place: TablePlace::Whole, mistake })
 }

@@ -1,9 +1,20 @@
 //! Tables out and in again, and what is told about wrong ones. The site and the numbers are invented.
 
 use super::*;
+use crate::documents::{ARRIVALS_SCHEMA, Head, Inputs, Program};
 use crate::site::Site;
 use arcstead_core::ChannelFlags;
 use nalgebra::DMatrix;
+
+fn head() -> Head {
+    Head {
+        schema: ARRIVALS_SCHEMA.into(),
+        program: Program::this(),
+        site: Some("Marl Bank".into()),
+        inputs: Inputs { files: vec![], count: 0, site_sha256: None },
+        options: serde_json::Map::new(),
+    }
+}
 
 fn site() -> Site {
     site_with_delay("52.1")
@@ -90,7 +101,7 @@ fn csv_reads_back_exactly() {
 #[test]
 fn json_reads_back_exactly_and_has_the_same_columns() {
     let (site, captures) = (site(), captures(300));
-    let mut writer = ArrivalsWriter::json(Vec::new(), "table.json", &site).unwrap();
+    let mut writer = ArrivalsWriter::json(Vec::new(), "table.json", &site, &head()).unwrap();
     for capture in &captures {
         writer.write(capture).unwrap();
     }
@@ -98,9 +109,11 @@ fn json_reads_back_exactly_and_has_the_same_columns() {
     assert_eq!(read_json(&text, "table.json", &site).unwrap(), captures);
     let json: serde_json::Value = serde_json::from_str(&text).unwrap();
     let header = written_csv(&site, &[]);
-    let keys: Vec<_> = json[0].as_object().unwrap().keys().map(String::as_str).collect();
+    let keys: Vec<_> = json["arrivals"][0].as_object().unwrap().keys().map(String::as_str).collect();
     assert_eq!(keys.join(","), header.trim_end());
-    let empty = ArrivalsWriter::json(Vec::new(), "", &site).unwrap().finish().unwrap();
+    assert_eq!(json["schema"], "arcstead/arrivals/1");
+    assert_eq!(json["program"]["name"], "arcstead");
+    let empty = ArrivalsWriter::json(Vec::new(), "", &site, &head()).unwrap().finish().unwrap();
     assert_eq!(read_json(std::str::from_utf8(&empty).unwrap(), "", &site).unwrap(), []);
 }
 
@@ -291,10 +304,13 @@ fn json_mistakes_are_told_with_their_row() {
     let site = site();
     let row = r#"{"capture":"s1","antenna":"A1","arrival_s":1e-7,"sigma_s":1e-10}"#;
     let told = |text: &str| read_json(text, "table.json", &site).unwrap_err().to_string();
-    assert_eq!(read_json(&format!("[{row}]"), "table.json", &site).unwrap()[0].received(), 1);
+    let of = |rows: &str| format!(r#"{{"schema":"arcstead/arrivals/1","arrivals":[{rows}]}}"#);
+    assert_eq!(read_json(&of(row), "table.json", &site).unwrap()[0].received(), 1);
     assert!(
-        told(&format!("[{row},{row}]")).starts_with("table.json: row 2: capture `s1` has antenna `A1` twice")
+        told(&of(&format!("{row},{row}")))
+            .starts_with("table.json: row 2: capture `s1` has antenna `A1` twice")
     );
+    assert!(told(&of(row).replace("arrivals/1", "locate/1")).contains("says schema `arcstead/locate/1`"));
     assert!(told("{}").starts_with("table.json: not JSON as expected"));
 }
 

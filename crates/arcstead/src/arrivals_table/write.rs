@@ -6,6 +6,7 @@ use std::path::PathBuf;
 use super::capture_arrivals::CaptureArrivals;
 use super::error::{ArrivalsTableError, TableMistake, TablePlace};
 use super::row::{COLUMNS, Row};
+use crate::documents::Head;
 use crate::site::{MAIN_STANCE, Site};
 
 /// Writes an arrivals table, the rows of one capture at a time. Holds nothing back but a buffer.
@@ -35,12 +36,22 @@ impl<'s, W: Write> ArrivalsWriter<'s, W> {
         Ok(table)
     }
 
-    /// A table in JSON. `name` stands for the table in errors.
+    /// A table in JSON: a document that begins with `head` and holds the rows as `arrivals`. `name` stands for the table
+    /// in errors.
     ///
     /// # Errors
     /// When `out` cannot be written.
-    pub fn json(mut out: W, name: impl Into<PathBuf>, site: &'s Site) -> Result<Self, ArrivalsTableError> {
-        let begun = out.write_all(b"[");
+    pub fn json(
+        mut out: W,
+        name: impl Into<PathBuf>,
+        site: &'s Site,
+        head: &Head,
+    ) -> Result<Self, ArrivalsTableError> {
+        let begun = serde_json::to_string(head).map_err(std::io::Error::from).and_then(|mut text| {
+            // The head is an object; the rows go in before its closing brace.
+            text.pop();
+            write!(out, "{text},\"arrivals\":[")
+        });
         let table = Self { site, name: name.into(), form: Form::Json { out, rows: 0 } };
         begun.map_err(|error| table.failed(TableMistake::File(error)))?;
         Ok(table)
@@ -87,7 +98,7 @@ impl<'s, W: Write> ArrivalsWriter<'s, W> {
         let path = self.name;
         let ended = match self.form {
             Form::Csv(writer) => writer.into_inner().map_err(csv::IntoInnerError::into_error),
-            Form::Json { mut out, .. } => out.write_all(b"\n]\n").map(|()| out),
+            Form::Json { mut out, .. } => out.write_all(b"\n]}\n").map(|()| out),
         };
         ended.and_then(|mut out| out.flush().map(|()| out)).map_err(|error| ArrivalsTableError {
             path,

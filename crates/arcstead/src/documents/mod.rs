@@ -20,4 +20,8 @@ pub use locate::{
     Region, RejectedCapture, SourceResult, Statement, Verdict,
 };
 pub use truth::{TrueAntenna, TrueCapture, TrueSource, TruthDocument};
+/// Schema of an arrivals table in JSON; its rows are written one by one by
+/// [`ArrivalsWriter`](crate::arrivals_table::ArrivalsWriter).
+pub const ARRIVALS_SCHEMA: &str = "arcstead/arrivals/1";
+
 pub use written::{Document, DocumentError};

@@ -2,9 +2,9 @@
 
 use std::path::Path;
 
-use arcstead::TimedVisit;
 use arcstead::arrivals_table::{ArrivalsTableError, ArrivalsWriter};
 use arcstead::site::Site;
+use arcstead::{TimedVisit, arrivals_head};
 
 use super::read_visit::read_visit;
 use crate::arguments::{ArrivalsArguments, Format};
@@ -17,10 +17,19 @@ pub(crate) fn run(asked: &ArrivalsArguments, console: &mut Console<'_>) -> Resul
     let site = Site::read(&asked.site)?;
     let inputs = asked.captures.iter().map(Path::new).chain([asked.site.as_path()]);
     let output = Output::check(asked.output.output.as_deref(), inputs)?;
-    let timed = read_visit(&site, &asked.captures, &asked.timing.options(), asked.threads, &console.talk)?;
+    let timed = read_visit(
+        &site,
+        &asked.captures,
+        &asked.timing.options(),
+        asked.threads.map_or(0, usize::from),
+        &console.talk,
+    )?;
     let text = match asked.output.format() {
         Format::Table => table::arrivals::text(&site, &timed, console.glyphs, console.talk.verbose),
-        Format::Json => written(&timed, ArrivalsWriter::json(Vec::new(), "arrivals", &site)?)?,
+        Format::Json => written(
+            &timed,
+            ArrivalsWriter::json(Vec::new(), "arrivals", &site, &arrivals_head(&site, &timed))?,
+        )?,
         Format::Csv => written(&timed, ArrivalsWriter::csv(Vec::new(), "arrivals", &site)?)?,
     };
     output.write(&text, console)?;

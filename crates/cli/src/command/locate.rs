@@ -11,23 +11,27 @@ use crate::arguments::{Format, LocateArguments};
 use crate::console::Console;
 use crate::failure::Failure;
 use crate::output::Output;
+use crate::progress::Progress;
 use crate::{sheet, status, table};
 
 pub(crate) fn run(asked: &LocateArguments, console: &mut Console<'_>) -> Result<u8, Failure> {
     let site = Site::read(&asked.site)?;
     let inputs = asked.captures.iter().map(Path::new).chain(asked.arrivals.iter().map(AsRef::as_ref));
     let output = Output::check(asked.output.output.as_deref(), inputs.chain([asked.site.as_path()]))?;
-    let options =
-        LocateOptions { arrivals: asked.timing.options(), confidence: asked.confidence, each: asked.each };
+    let threads = asked.threads.map_or(0, usize::from);
+    let options = LocateOptions { confidence: asked.confidence, each: asked.each, threads };
     let timed = if asked.arrivals.is_empty() {
-        read_visit(&site, &asked.captures, &options.arrivals, asked.threads, &console.talk)?
+        read_visit(&site, &asked.captures, &asked.timing.options(), threads, &console.talk)?
     } else {
         TimedVisit::from_tables(&site, &asked.arrivals)?
     };
     if timed.arrivals.is_empty() {
         return Err(Failure::NothingRead(timed.unreadable));
     }
-    let document = locate(&site, &timed, &options)?;
+    let progress = Progress::begin(&console.talk, asked.each.then_some(timed.arrivals.len()));
+    let document = locate(&site, &timed, &options, &progress);
+    progress.end();
+    let document = document?;
     let text = match asked.output.format() {
         Format::Table => table::locate::text(&document, console.glyphs, console.talk.verbose),
         Format::Json => document.to_json()?,

@@ -19,14 +19,14 @@ pub(super) fn read_visit(
     site: &Site,
     arguments: &[OsString],
     options: &ArrivalOptions,
-    threads: Option<u16>,
+    threads: usize,
     talk: &Talk<'_>,
 ) -> Result<TimedVisit, Failure> {
     let (stance, paths) = stance_argument::split(site, arguments)?;
     let visit = Visit::open(site, &stance, &paths)?;
     talk.note_all(&visit.skipped().iter().map(skipped).collect::<Vec<_>>());
     let progress = Progress::begin(talk, Some(visit.capture_count()));
-    let timed = visit.time(options, threads.map_or(0, usize::from), &progress);
+    let timed = visit.time(options, threads, &progress);
     progress.end();
     let timed = timed?;
     if timed.arrivals.is_empty() {
