@@ -5,6 +5,7 @@ use arcstead_solver::{Combined, Fix, ImpossibleDelay, SLACK_SIGMAS};
 use crate::arrivals_table::CaptureArrivals;
 use crate::documents::{Flag, SourceResult};
 use crate::site::Site;
+use crate::timer::ArrivalOptions;
 
 /// Holds for every result.
 pub(crate) fn of_every_result() -> [String; 2] {
@@ -62,20 +63,30 @@ fn of_flags(source: &SourceResult) -> Vec<String> {
         .iter()
         .map(|flag| match flag {
             Flag::FewAntennas => format!(
-                "{used} antennas leave no arrival to check: a wrong cable delay or a hidden antenna would move the answer \
-                 unseen. One more antenna would show it."
+                "{used} antennas leave no arrival to check: a wrong cable delay, a wrong position or a hidden antenna would \
+                 move the answer unseen. One more antenna would show it."
             ),
             Flag::RangeUndetermined => {
-                "The direction is known, the distance is not: trust the bearing, not the point. A second place for the \
-                 antennas, well to the side, would fix it."
+                "The direction is known, the distance is not: the bearing holds if delays and antenna positions are right, \
+                 the point does not. A second place for the antennas, well to the side, would fix it."
+                    .into()
+            }
+            Flag::Scattered => {
+                "The captures scatter far more than their sigmas allow: more than one source may be discharging near this \
+                 place, or the sigmas are too small. The place told may lie between two sources; no asset is named."
+                    .into()
+            }
+            Flag::Hidden => {
+                "The place told is one that obstacles hide from some of the antennas, and such a place explains almost \
+                 anything: wrong delays, swapped channels, wrong positions too. Check those, or move the hidden antennas."
                     .into()
             }
             Flag::MirrorAmbiguity => {
                 "The arrivals fit more than one separate place; see the other places before acting on the first.".into()
             }
             Flag::PoorFit => {
-                "The arrivals fit no place within their sigmas: a cable, a delay, an antenna position or a line of sight is \
-                 not what the site file says. No asset is named."
+                "No place in the search box explains the arrivals within their sigmas: the source is outside the box, or a \
+                 delay, a channel, an antenna position or a line of sight is not what the site file says. No asset is named."
                     .into()
             }
             Flag::AntennaLate => "An arrival later than any place can cause was left out.".into(),
@@ -94,8 +105,9 @@ fn of_flags(source: &SourceResult) -> Vec<String> {
 }
 
 /// Which channels were not as they should be, in how many captures.
-fn of_channels(site: &Site, captures: &[&CaptureArrivals]) -> Vec<String> {
-    let told: [(&str, &str); 3] = [
+pub(crate) fn of_channels(site: &Site, captures: &[&CaptureArrivals]) -> Vec<String> {
+    let told: [(&str, &str); 4] = [
+        ("dead", "the channel carried nothing; look at cable, connector and power"),
         ("clipped", "the recorder's range cut the pulse; a smaller gain would keep its shape"),
         ("disagree", "onset and correlation disagree by more than their sigmas; a reflection may be in play"),
         ("weak", "the pulse hardly stands above the noise"),
@@ -134,8 +146,8 @@ pub(crate) fn of_impossible(site: &Site, delay: &ImpossibleDelay) -> String {
     let (direction, delay_ns) =
         if delay.delay_s >= 0.0 { ("later", delay.delay_s * 1e9) } else { ("earlier", -delay.delay_s * 1e9) };
     format!(
-        "{} hears the pulse {delay_ns:.2} ns {direction} than {}, but the way between them takes only {:.2} ns \
-         ({SLACK_SIGMAS} sigmas of {:.2} ns allowed): its arrival was set aside.",
+        "{} hears the pulse {delay_ns:.2} ns {direction} than {}, where at most {:.2} ns are possible ({SLACK_SIGMAS} \
+         sigmas of {:.2} ns allowed): its arrival was set aside. Check its delay_ns, its channel and its position.",
         name(delay.antenna),
         name(delay.against),
         delay.limit_s * 1e9,
@@ -191,11 +203,37 @@ pub(crate) fn of_missed(site: &Site, captures: &[CaptureArrivals], used: usize) 
     ))
 }
 
+/// The band asked for against the bands of the antennas.
+pub(crate) fn of_band(site: &Site, timing: &ArrivalOptions) -> Option<String> {
+    let (low_hz, high_hz) = timing.band_hz?;
+    let beyond: Vec<&str> = site
+        .geometry
+        .antennas
+        .iter()
+        .zip(&site.chains)
+        .filter(|(_, chain)| {
+            chain
+                .band_hz
+                .is_some_and(|(antenna_low, antenna_high)| low_hz < antenna_low || high_hz > antenna_high)
+        })
+        .map(|(antenna, _)| antenna.name.as_str())
+        .collect();
+    (!beyond.is_empty()).then(|| {
+        format!(
+            "The band asked for, {} to {} MHz, reaches beyond what the site file states for {}: what is timed there may be no \
+             pulse.",
+            low_hz / 1e6,
+            high_hz / 1e6,
+            beyond.join(", ")
+        )
+    })
+}
+
 /// No set of captures agrees.
 pub(crate) fn of_no_agreement(usable: usize) -> Option<String> {
     (usable > 0).then(|| {
         format!(
-            "{usable} captures hold pulses, but no three of them agree in their delays: several sources, passing radios, or \
+            "{usable} captures hold pulses, but too few of them agree in their delays: several sources, passing radios, or \
              picks in the noise. `--each` solves every capture by itself."
         )
     })

@@ -34,6 +34,10 @@ impl Default for LocateOptions {
 /// Fewest captures that make a source when they are the smaller part of a visit: two may agree by chance.
 const FEWEST_AGREEING: usize = 3;
 
+/// Scatter of the captures over the scatter stated (as variances) from which nothing is stated: sigmas are wrong by a half,
+/// or two sources near each other take turns, and the middle between them is nobody's place.
+const SCATTERED: f64 = 2.25;
+
 /// A capture with enough arrivals to be solved.
 struct Usable<'t> {
     capture: &'t CaptureArrivals,
@@ -94,7 +98,11 @@ pub fn locate(
     } else {
         combined_source(site, &geometry, &usable, options, &mut told);
     }
+    if told.sources.is_empty() {
+        told.cautions.extend(cautions::of_channels(site, &visit.arrivals.iter().collect::<Vec<_>>()));
+    }
     told.cautions.extend(cautions::of_missed(site, &visit.arrivals, told.counts.used));
+    told.cautions.extend(visit.timing.and_then(|timing| cautions::of_band(site, &timing)));
     told.cautions.extend(cautions::of_every_result());
     let mut head = head(LocateDocument::SCHEMA, site, visit);
     head.options.insert("confidence".into(), options.confidence.into());
@@ -165,7 +173,7 @@ fn combined_source(
 ) {
     let agreed = consensus(&usable.iter().map(|one| &one.arrivals).collect::<Vec<_>>());
     let members: Vec<&Usable<'_>> = agreed.members.iter().map(|&index| &usable[index]).collect();
-    let enough = members.len() >= FEWEST_AGREEING || 2 * members.len() >= usable.len();
+    let enough = members.len() >= FEWEST_AGREEING || 2 * members.len() > usable.len();
     let whole = combine(&members.iter().map(|member| &member.arrivals).collect::<Vec<_>>());
     let (Some(whole), true) = (whole, enough) else {
         told.counts.stray = usable.len();
@@ -176,7 +184,12 @@ fn combined_source(
         Ok(fix) => {
             told.counts.used = members.len();
             told.counts.stray = usable.len() - members.len();
-            let source = source(site, geometry, &members, &fix);
+            let mut source = source(site, geometry, &members, &fix);
+            if whole.enlargement > SCATTERED {
+                source.verdict.statement = Statement::CannotTell;
+                source.verdict.assets.clear();
+                source.flags.push(Flag::Scattered);
+            }
             let captures: Vec<&CaptureArrivals> = members.iter().map(|member| member.capture).collect();
             told.cautions.extend(cautions::of_source(site, &source, &fix, &whole, &captures));
             told.cautions.extend(cautions::of_strays(told.counts.stray, usable.len()));
@@ -333,6 +346,7 @@ fn flag_name(flag: solver::Flag) -> Flag {
         solver::Flag::AntennaLate => Flag::AntennaLate,
         solver::Flag::AntennaEarly => Flag::AntennaEarly,
         solver::Flag::PoorFit => Flag::PoorFit,
+        solver::Flag::Hidden => Flag::Hidden,
         solver::Flag::RegionTouchesSearchEdge => Flag::RegionTouchesSearchEdge,
         // A flag of the solver this document has no name for would be the worst kind to lose: it is told as the gravest.
         _ => Flag::PoorFit,

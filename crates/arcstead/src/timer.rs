@@ -33,7 +33,7 @@ impl ArrivalOptions {
     /// recorder share, else none (the estimator's default).
     ///
     /// A recorder's bandwidth ends the band only above; antennas without a stated band do not limit it. Nothing
-    /// shared gives none, which `check` tells.
+    /// shared, or no antenna with a stated band, gives none.
     #[must_use]
     pub fn band_of(&self, site: &Site) -> Option<(f64, f64)> {
         if self.band_hz.is_some() {

@@ -45,6 +45,12 @@ pub enum VisitError {
     /// An arrivals table cannot be read.
     #[error(transparent)]
     Table(#[from] ArrivalsTableError),
+    /// The same capture stands in the tables twice.
+    #[error("capture \"{capture}\" stands in the tables twice with the same arrivals; give each table once")]
+    RepeatedCapture {
+        /// Its name.
+        capture: String,
+    },
     /// The site has no stance of this name.
     #[error("the site has no stance \"{name}\"; it has: {known}")]
     Stance {
@@ -155,6 +161,13 @@ impl<'s> Visit<'s> {
         self.files.iter().map(|file| file.opened.capture_count()).sum()
     }
 
+    /// The files that are read: those that were opened, and the samples beside a description of them.
+    #[must_use]
+    pub fn files(&self) -> Vec<PathBuf> {
+        let described = |path: &PathBuf| [path.clone(), path.with_extension("sigmf-data")];
+        self.files.iter().flat_map(|file| described(&file.path)).collect()
+    }
+
     /// What the arguments named but was passed over.
     #[must_use]
     pub fn skipped(&self) -> &[Skipped] {
@@ -254,6 +267,13 @@ impl TimedVisit {
             timed.files.push(path.display().to_string());
         }
         timed.captures = timed.arrivals.len();
+        let mut seen: HashMap<(&str, &str), &CaptureArrivals> = HashMap::new();
+        for capture in &timed.arrivals {
+            // Of one name but other arrivals it is another folder's.
+            if seen.insert((&capture.stance, &capture.capture), capture).is_some_and(|same| same == capture) {
+                return Err(VisitError::RepeatedCapture { capture: capture.capture.clone() });
+            }
+        }
         for capture in &timed.arrivals {
             if site.geometry_of_stance(&capture.stance).is_none() {
                 return Err(no_such_stance(site, &capture.stance));

@@ -41,6 +41,19 @@ impl Output {
         }
     }
 
+    /// Checks that the result replaces none of the files that are read, which arguments name by their folders.
+    ///
+    /// # Errors
+    /// [`Failure::OutputIsInput`].
+    pub(crate) fn spare(&self, files: &[PathBuf]) -> Result<(), Failure> {
+        let Some(path) = &self.file else { return Ok(()) };
+        let Ok(real) = path.canonicalize() else { return Ok(()) };
+        if files.iter().any(|file| file.canonicalize().is_ok_and(|file| file == real)) {
+            return Err(Failure::OutputIsInput { path: path.clone() });
+        }
+        Ok(())
+    }
+
     /// Writes the whole result. Emphasis in `text` is taken out where it would not show.
     ///
     /// # Errors

@@ -44,6 +44,15 @@ impl Arrivals {
         }
     }
 
+    /// Whether there are as many times, and as many rows and columns of the covariance, as antennas, all of them finite.
+    #[must_use]
+    pub fn is_consistent(&self) -> bool {
+        let n = self.antennas.len();
+        self.times_s.len() == n
+            && self.random_covariance_s2.shape() == (n, n)
+            && self.times_s.iter().chain(self.random_covariance_s2.iter()).all(|value| value.is_finite())
+    }
+
     /// Whether the arrivals fit together and to the site.
     ///
     /// # Errors

@@ -10,8 +10,9 @@
 //! all antennas share out of the bound, which is what makes places far from the array cheap to exclude.
 //! An antenna that may be in shadow for part of the box is left out of the bound: data left out can only lower
 //! chi-square. Boxes whose bound exceeds the best value found by more than [`MARGIN`] are dropped; every other box
-//! is split until the likelihood hardly changes in it. Hence the certificate: **every place of the body
-//! whose -2 ln likelihood is within `MARGIN` of the best found lies in one of the cells returned.**
+//! is split until the likelihood hardly changes in it. Hence the certificate: **every place of the search box
+//! whose -2 ln likelihood is within `MARGIN` of the best found lies in one of the cells returned.** In an asset's capsule the
+//! boxes are the same, but of those that its surface crosses only the parts with their centres inside are kept.
 
 use std::collections::BinaryHeap;
 
@@ -22,7 +23,7 @@ use crate::error::SolveError;
 use crate::likelihood::{BoxBound, Evaluator, Shadows};
 
 /// How far -2 ln likelihood may lie above the best before a place is dropped: a share below 2e-5 of a Gaussian
-/// posterior in space.
+/// posterior in space, and below 1e-3 where shadows give it long tails.
 pub(crate) const MARGIN: f64 = 25.0;
 
 /// Boxes looked into before refinement stops and what is left is told as it is.
@@ -40,6 +41,11 @@ pub(crate) struct Cell {
 }
 
 impl Cell {
+    /// Integral of the likelihood over the cell, in units of exp(-`from`/2).
+    pub(crate) fn mass(&self, from: f64) -> f64 {
+        self.measure() * (-0.5 * (self.minus_two_ln - from)).exp()
+    }
+
     /// Volume, or area of a flat cell.
     pub(crate) fn measure(&self) -> f64 {
         self.half_m.iter().filter(|&&half| half > 0.0).map(|half| 2.0 * half).product()
@@ -56,14 +62,18 @@ pub(crate) struct Search {
 }
 
 impl Search {
+    /// The least -2 ln likelihood of the cells; infinite when there are none.
+    pub(crate) fn least(&self) -> f64 {
+        self.cells.iter().map(|cell| cell.minus_two_ln).fold(f64::INFINITY, f64::min)
+    }
+
     /// ln of the integral of the likelihood over the body; none when nothing of it is near enough to the best.
     pub(crate) fn ln_mass(&self) -> Option<f64> {
-        let best = self.cells.iter().map(|cell| cell.minus_two_ln).fold(f64::INFINITY, f64::min);
+        let best = self.least();
         if best.is_infinite() {
             return None;
         }
-        let sum: f64 =
-            self.cells.iter().map(|cell| cell.measure() * (-0.5 * (cell.minus_two_ln - best)).exp()).sum();
+        let sum: f64 = self.cells.iter().map(|cell| cell.mass(best)).sum();
         Some(sum.ln() - 0.5 * best)
     }
 }
@@ -220,7 +230,10 @@ fn quarter(
                 Some(value) => value,
                 None => evaluator.at(&centre_m)?.minus_two_ln,
             };
-            cells.push(Cell { centre_m, half_m, minus_two_ln });
+            // A cell that is all inside an obstacle holds nothing; one whose centre is may still reach out of it.
+            if minus_two_ln.is_finite() || !evaluator.likelihood().is_walled_in(&centre_m, half_m.norm()) {
+                cells.push(Cell { centre_m, half_m, minus_two_ln });
+            }
         }
     }
     Ok(())

@@ -27,10 +27,13 @@ pub struct Combined {
 
 /// Puts captures of one source together.
 ///
-/// None when there is no capture, or when their antennas do not hang together (no chain of captures links two
-/// of the antennas), or when a covariance is not positive definite.
+/// None when there is no capture, when the parts of one do not fit together or are not finite, when their antennas do not
+/// hang together (no chain of captures links two of the antennas), or when a covariance is not positive definite.
 #[must_use]
 pub fn combine(captures: &[&Arrivals]) -> Option<Combined> {
+    if !captures.iter().all(|capture| capture.is_consistent()) {
+        return None;
+    }
     let mut antennas: Vec<usize> =
         captures.iter().flat_map(|capture| capture.antennas.iter().copied()).collect();
     antennas.sort_unstable();
@@ -94,7 +97,7 @@ fn misfit(capture: &Arrivals, times_s: &DVector<f64>, precision: &DMatrix<f64>) 
 }
 
 /// Chi-square of the difference between two sets of arrivals at their common antennas, both emission times free, and
-/// its degrees of freedom. None when fewer than two antennas are common.
+/// its degrees of freedom. None when fewer than two antennas are common, or the parts of one do not fit together.
 #[must_use]
 pub fn disagreement(a: &Arrivals, b: &Arrivals) -> Option<(f64, usize)> {
     let common: Vec<(usize, usize)> = a
@@ -103,7 +106,7 @@ pub fn disagreement(a: &Arrivals, b: &Arrivals) -> Option<(f64, usize)> {
         .enumerate()
         .filter_map(|(i, antenna)| b.antennas.iter().position(|other| other == antenna).map(|j| (i, j)))
         .collect();
-    if common.len() < 2 {
+    if common.len() < 2 || !a.is_consistent() || !b.is_consistent() {
         return None;
     }
     let (of_a, of_b): (Vec<usize>, Vec<usize>) = common.into_iter().unzip();

@@ -18,8 +18,11 @@ pub struct Consensus {
 
 /// A capture of the source lies outside with this probability, once its sigma is right.
 const MISSED: f64 = 1e-4;
-/// Captures whose sigmas are too small by up to this factor still find each other.
+/// Captures whose sigmas are too small by up to this factor still find each other, once too few do at their own sigmas.
 const SIGMA_SLACK: f64 = 3.0;
+/// Share of the captures that must agree at their own sigmas: with less, the sigmas are taken to be too small. Sources that
+/// take turns hold more each, unless there are more than three.
+const HONEST_SHARE: f64 = 0.3;
 /// Captures tried as the seed of the set; spread over the visit.
 const SEEDS: usize = 64;
 const ROUNDS: usize = 20;
@@ -36,17 +39,25 @@ pub fn consensus(captures: &[&Arrivals]) -> Consensus {
             .is_some_and(|(distance, degrees)| degrees >= 2 && distance <= slack * limits[degrees])
     };
     let step = usable.len().div_ceil(SEEDS).max(1);
-    let mut members: Vec<usize> = Vec::new();
-    for &seed in usable.iter().step_by(step) {
-        let around: Vec<usize> =
-            usable.iter().copied().filter(|&k| near(captures[seed], k, SIGMA_SLACK.powi(2))).collect();
-        if around.len() > members.len() {
-            members = around;
+    let largest_around_a_seed = |slack: f64| {
+        let mut largest: Vec<usize> = Vec::new();
+        for &seed in usable.iter().step_by(step) {
+            let around: Vec<usize> =
+                usable.iter().copied().filter(|&k| near(captures[seed], k, slack)).collect();
+            if around.len() > largest.len() {
+                largest = around;
+            }
+            // A set that holds more than half is the one to begin from; the rounds below find the rest of it.
+            if 2 * largest.len() > usable.len() {
+                break;
+            }
         }
-        // No set is larger than one that holds more than half.
-        if 2 * members.len() > usable.len() {
-            break;
-        }
+        largest
+    };
+    // At their own sigmas first: two sources near each other would melt into one between them at any slack.
+    let mut members = largest_around_a_seed(1.0);
+    if (members.len() as f64) < HONEST_SHARE * usable.len() as f64 {
+        members = largest_around_a_seed(SIGMA_SLACK.powi(2));
     }
     for _ in 0..ROUNDS {
         let chosen: Vec<&Arrivals> = members.iter().map(|&k| captures[k]).collect();
@@ -101,6 +112,16 @@ mod tests {
         let found = consensus(&all.iter().collect::<Vec<_>>());
         assert_eq!(found.members, (0..30).collect::<Vec<_>>());
         assert_eq!(found.strays.len(), 11);
+    }
+
+    #[test]
+    fn sources_that_take_turns_do_not_melt() {
+        // Twenty sigmas apart, equally many captures: within three times their sigmas of a place between them.
+        let all = visit(&[(20, [0.0, 5.0, 9.0, 2.0]), (20, [0.0, 5.4, 8.8, 2.3])], 1.0);
+        let found = consensus(&all.iter().collect::<Vec<_>>());
+        assert!(found.members.len() >= 18 && found.members.len() <= 20, "{:?}", found.members);
+        let first = found.members[0] < 20;
+        assert!(found.members.iter().all(|&k| (k < 20) == first), "{:?}", found.members);
     }
 
     #[test]

@@ -62,6 +62,16 @@ pub enum SolveError {
         "the antennas that received the pulse all stand at one place; no delay between them tells a direction"
     )]
     CoincidentAntennas,
+    /// A number of the site is out of its range.
+    #[error("{what} is {found}; expected {expected}")]
+    Site {
+        /// Which number.
+        what: &'static str,
+        /// Its value.
+        found: f64,
+        /// What it may be.
+        expected: &'static str,
+    },
     /// The search box is empty.
     #[error("the search box is empty or not finite; expected min below max on x and y")]
     SearchBox,

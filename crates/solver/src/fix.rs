@@ -13,7 +13,7 @@ use crate::likelihood::{Evaluator, Likelihood};
 use crate::modes::{self, Mode};
 use crate::region::{self, Bearing, Region};
 use crate::site::Site;
-use crate::verdict::{POOR_FIT, Verdict, verdict};
+use crate::verdict::{POOR_FIT, Statement, Verdict, verdict};
 
 /// What is told about a source.
 #[derive(Debug, Clone, PartialEq)]
@@ -49,12 +49,25 @@ pub struct Fix {
 /// How well a place explains the arrivals.
 #[derive(Debug, Clone, Copy, PartialEq)]
 pub struct Fit {
-    /// Chi-square of the residuals at the position.
+    /// Chi-square of the residuals at the position, of the antennas that see it.
     pub chi_square: f64,
-    /// Antennas used - 1 - unknown coordinates.
+    /// Antennas that see the position - 1 - unknown coordinates; zero when they are fewer.
     pub degrees_of_freedom: usize,
     /// Probability of a greater chi-square by chance; none without degrees of freedom.
     pub p_value: Option<f64>,
+    /// Antennas used whose line to the position is clear: only their arrivals are known to be direct.
+    pub direct: usize,
+}
+
+impl Fit {
+    /// Whether the fit is too poor to believe: p below [`POOR_FIT`]. Without degrees of freedom a place that explains the
+    /// arrivals has a chi-square of zero; one that is forced to the edge of the search has not, and is judged as if
+    /// it had one.
+    #[must_use]
+    pub fn is_poor(&self) -> bool {
+        let p = self.p_value.or_else(|| chi_square_exceedance(1, self.chi_square));
+        p.is_some_and(|p| p < POOR_FIT)
+    }
 }
 
 /// One antenna's part in a fix.
@@ -77,7 +90,7 @@ pub struct AntennaFit {
 #[derive(Debug, Clone, Copy, PartialEq, Eq, PartialOrd, Ord, Hash)]
 #[non_exhaustive]
 pub enum Flag {
-    /// As many unknowns as data: no arrival can be checked.
+    /// As many unknowns as arrivals that came straight: none of them can be checked.
     FewAntennas,
     /// The direction is known, the range is not.
     RangeUndetermined,
@@ -91,6 +104,9 @@ pub enum Flag {
     AntennaEarly,
     /// The region touches the edge of the search box.
     RegionTouchesSearchEdge,
+    /// Fewer antennas than unknowns + 1 see the position, or it is on no asset and not all antennas see it: it rests on
+    /// arrivals that are late by unknown amounts, and such a place explains almost anything.
+    Hidden,
 }
 
 /// Share of another mode from which the answer counts as ambiguous.
@@ -99,10 +115,18 @@ pub const AMBIGUOUS: f64 = 0.05;
 /// Locates the source of `arrivals` on `site`, with regions at `confidence` (0-1).
 ///
 /// # Errors
-/// [`SolveError`] when the arrivals do not fit the site, are too few (after impossible ones are set aside),
-/// or are not finite.
+/// [`SolveError`] when the arrivals do not fit the site, are too few (after impossible ones are set aside), or are not
+/// finite, and when a number of the site or the confidence is out of its range.
 pub fn locate(site: &Site, arrivals: &Arrivals, confidence: f64) -> Result<Fix, SolveError> {
     arrivals.check(site)?;
+    site.check()?;
+    if !(confidence > 0.0 && confidence < 1.0) {
+        return Err(SolveError::Site {
+            what: "the confidence",
+            found: confidence,
+            expected: "between 0 and 1",
+        });
+    }
     let unknowns = site.search.unknowns();
     let (used, impossible) = set_aside(site, arrivals);
     let received = used.antennas.len();
@@ -126,14 +150,20 @@ pub fn locate(site: &Site, arrivals: &Arrivals, confidence: f64) -> Result<Fix, 
     let bearing = region::bearing(&main, &site.search, likelihood.array_centre_m(), confidence)
         .ok_or(SolveError::SearchBox)?;
     let covariance = covariance(&mut evaluator, &best.position_m, unknowns)?;
-    let degrees_of_freedom = received - 1 - unknowns;
-    let fit = Fit {
-        chi_square: best.value.chi_square,
-        degrees_of_freedom,
-        p_value: chi_square_exceedance(degrees_of_freedom, best.value.chi_square),
-    };
-    let verdict = verdict(&mut evaluator, site, &everywhere, fit.p_value)?;
-    let flags = flags(&likelihood, &fit, &bearing, &modes, &region, &impossible);
+    let fit = fit(site, &used, &likelihood, &best)?;
+    // A place that rests on arrivals late by unknown amounts explains almost anything: a wrong cable too.
+    let rests_on_late = fit.direct < unknowns + 1;
+    let mut verdict = verdict(&mut evaluator, site, &everywhere, !fit.is_poor() && !rests_on_late)?;
+    let nothing_but_hidden = verdict.statement == Statement::Elsewhere && fit.direct < received;
+    // Arrivals that nothing checks lead to some place or other: on no asset, as a rule, when one of them is wrong.
+    let unchecked = verdict.statement == Statement::Elsewhere && fit.degrees_of_freedom == 0;
+    if nothing_but_hidden || unchecked {
+        verdict.statement = Statement::CannotTell;
+    }
+    let mut flags = flags(&likelihood, &fit, &bearing, &modes, &region, &impossible);
+    if rests_on_late || nothing_but_hidden {
+        flags.push(Flag::Hidden);
+    }
     Ok(Fix {
         position_m: best.position_m,
         ended: best.ended,
@@ -148,6 +178,26 @@ pub fn locate(site: &Site, arrivals: &Arrivals, confidence: f64) -> Result<Fix, 
         verdict,
         flags,
         resolved: everywhere.resolved,
+    })
+}
+
+/// How well the place explains the arrivals that came straight. One that came round an obstacle checks nothing.
+fn fit(site: &Site, used: &Arrivals, likelihood: &Likelihood, best: &Minimum) -> Result<Fit, SolveError> {
+    let clear: Vec<bool> =
+        (0..likelihood.len()).map(|index| likelihood.line_of_sight(index, &best.position_m)).collect();
+    let direct = clear.iter().filter(|clear| **clear).count();
+    let degrees_of_freedom = direct.saturating_sub(1 + site.search.unknowns());
+    let chi_square = if direct < used.antennas.len() && direct >= 2 {
+        let straight = Likelihood::new(site, &used.only(|place| clear[place]))?;
+        Evaluator::new(&straight).at(&best.position_m)?.chi_square
+    } else {
+        best.value.chi_square
+    };
+    Ok(Fit {
+        chi_square,
+        degrees_of_freedom,
+        p_value: chi_square_exceedance(degrees_of_freedom, chi_square),
+        direct,
     })
 }
 
@@ -186,7 +236,7 @@ fn flags(
         (fit.degrees_of_freedom == 0, Flag::FewAntennas),
         (range_undetermined, Flag::RangeUndetermined),
         (modes.iter().skip(1).any(|mode| mode.probability >= AMBIGUOUS), Flag::MirrorAmbiguity),
-        (fit.p_value.is_some_and(|p| p < POOR_FIT), Flag::PoorFit),
+        (fit.is_poor(), Flag::PoorFit),
         (impossible.iter().any(|delay| delay.delay_s > 0.0), Flag::AntennaLate),
         (impossible.iter().any(|delay| delay.delay_s < 0.0), Flag::AntennaEarly),
         (!region.bounded, Flag::RegionTouchesSearchEdge),
@@ -209,7 +259,9 @@ fn antenna_fits(
     let residuals_m = evaluator.residuals_m(position_m)?;
     let systematic_m2 = likelihood.systematic_variances_m2(position_m);
     let way_m = |index: usize| (site.antennas[index].position_m - position_m).norm();
-    let emission_s = used.times_s[0] - way_m(used.antennas[0]) / speed - residuals_m[0] / speed;
+    // From an antenna whose arrival came straight, where there is one.
+    let seen = (0..likelihood.len()).find(|&index| likelihood.line_of_sight(index, position_m)).unwrap_or(0);
+    let emission_s = used.times_s[seen] - way_m(used.antennas[seen]) / speed - residuals_m[seen] / speed;
     let everyone = Likelihood::new(site, arrivals)?;
     let everyones_m2 = everyone.systematic_variances_m2(position_m);
     Ok(arrivals
@@ -414,5 +466,40 @@ mod tests {
         indefinite.random_covariance_s2[(0, 1)] = 1e-18;
         indefinite.random_covariance_s2[(1, 0)] = 1e-18;
         assert_eq!(refused(&good, &indefinite), SolveError::Covariance);
+    }
+
+    /// The relay house of a bay, with a source in front of it: a delay wrong by nanoseconds must not be explained by a
+    /// place behind or inside the house, which hears late and therefore explains anything.
+    #[test]
+    fn a_hidden_place_explains_no_wrong_cable() {
+        let mut site = site(&SPREAD, [-5.0, -8.0, 0.0], [22.0, 22.0, 12.0]);
+        let corner = nalgebra::Vector2::new;
+        site.obstacles = vec![crate::obstacle::Obstacle {
+            name: "house".into(),
+            footprint_m: vec![corner(9.0, 8.0), corner(13.0, 8.0), corner(13.0, 12.0), corner(9.0, 12.0)],
+            base_m: 0.0,
+            top_m: 3.2,
+        }];
+        let right = times(&site, [12.5, 4.0, 7.0]);
+        assert_eq!(fix(&site, &right).flags, []);
+        for antenna in 0..6 {
+            for shift_s in [-5e-9, 5e-9] {
+                let mut wrong = right.clone();
+                wrong[antenna] += shift_s;
+                let fix = fix(&site, &wrong);
+                let told = fix.flags.contains(&Flag::PoorFit) || fix.flags.contains(&Flag::Hidden);
+                assert!(told, "{antenna} {shift_s}: {:?} at {:?}", fix, fix.position_m);
+                assert_eq!(fix.verdict.statement, Statement::CannotTell, "{antenna} {shift_s}");
+            }
+        }
+    }
+
+    #[test]
+    fn without_degrees_of_freedom_a_forced_place_is_a_poor_fit() {
+        // The source is far outside the box: the best place in it does not explain the arrivals.
+        let site = site(&SPREAD[..4], [-5.0, -8.0, 0.0], [22.0, 22.0, 12.0]);
+        let fix = fix(&site, &times(&site, [90.0, 60.0, 5.0]));
+        assert!(fix.flags.contains(&Flag::PoorFit), "{:?} {:?}", fix.flags, fix.fit);
+        assert_eq!(fix.verdict.statement, Statement::CannotTell);
     }
 }

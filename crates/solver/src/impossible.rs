@@ -2,13 +2,18 @@
 //!
 //! The wave cannot arrive later at one antenna than at another by more than the way between the two takes. A source in
 //! line with two antennas reaches that limit, so a delay is impossible only when it exceeds it by more than
-//! [`SLACK_SIGMAS`] of its total sigma.
+//! [`SLACK_SIGMAS`] of its total sigma. Where obstacles stand, an arrival may have come round one: then it must exceed the
+//! limit by [`LATE_SCALES`] times the expected excess besides.
 
 use crate::arrivals::Arrivals;
 use crate::site::Site;
 
 /// Total sigmas by which a delay may exceed what is possible.
 pub const SLACK_SIGMAS: f64 = 4.0;
+
+/// Mean excesses of an arrival round an obstacle by which a delay may exceed what the straight ways allow: an exponential
+/// excess is greater once in a thousand.
+pub const LATE_SCALES: f64 = 7.0;
 
 /// A delay between two antennas that no place can cause.
 #[derive(Debug, Clone, Copy, PartialEq)]
@@ -26,11 +31,15 @@ pub struct ImpossibleDelay {
 }
 
 /// Sets aside arrivals until no impossible delay is left: each time the arrival with the most impossible delays, and between
-/// equals the later one, because propagation makes arrivals late and never early.
+/// equals the later one, because propagation makes arrivals late and never early. Arrivals whose shapes do not fit together
+/// are given back as they are.
 #[must_use]
 pub fn set_aside(site: &Site, arrivals: &Arrivals) -> (Arrivals, Vec<ImpossibleDelay>) {
     let mut kept = arrivals.clone();
     let mut reasons = Vec::new();
+    if !arrivals.is_consistent() {
+        return (kept, reasons);
+    }
     loop {
         let n = kept.antennas.len();
         let found: Vec<(usize, usize, ImpossibleDelay)> = (0..n)
@@ -38,7 +47,9 @@ pub fn set_aside(site: &Site, arrivals: &Arrivals) -> (Arrivals, Vec<ImpossibleD
             .filter_map(|(i, j)| impossible(site, &kept, i, j).map(|delay| (i, j, delay)))
             .collect();
         let count = |place: usize| found.iter().filter(|(i, j, _)| *i == place || *j == place).count();
-        let Some(&(_, _, _)) = found.first() else { return (kept, reasons) };
+        if found.is_empty() {
+            return (kept, reasons);
+        }
         let worst = (0..n)
             .max_by(|&a, &b| count(a).cmp(&count(b)).then(kept.times_s[a].total_cmp(&kept.times_s[b])))
             .unwrap_or(0);
@@ -70,10 +81,12 @@ fn excess(delay: &ImpossibleDelay) -> f64 {
 /// Whether arrival i is later than arrival j by more than is possible.
 fn impossible(site: &Site, arrivals: &Arrivals, i: usize, j: usize) -> Option<ImpossibleDelay> {
     let speed = site.air.speed_m_per_s;
-    let (a, b) = (&site.antennas[arrivals.antennas[i]], &site.antennas[arrivals.antennas[j]]);
+    let a = site.antennas.get(arrivals.antennas[i])?;
+    let b = site.antennas.get(arrivals.antennas[j])?;
     let between = a.position_m - b.position_m;
     let direction = between.try_normalize(0.0)?;
-    let limit_s = between.norm() / speed;
+    let round_s = if site.obstacles.is_empty() { 0.0 } else { LATE_SCALES * site.priors.late_scale_s };
+    let limit_s = between.norm() / speed + round_s;
     let delay_s = arrivals.times_s[i] - arrivals.times_s[j];
     let covariance = &arrivals.random_covariance_s2;
     let random = covariance[(i, i)] + covariance[(j, j)] - 2.0 * covariance[(i, j)];

@@ -51,6 +51,9 @@ const FIRST_DAMPING: f64 = 1e-3;
 
 /// The minimum reached downhill from `start_m`, inside the search box.
 ///
+/// Each step takes the weights as they are at the point; where sigmas differ by axis they change with the direction, and the
+/// search may end a fraction of a sigma from the minimum of -2 ln likelihood. Regions and verdicts do not depend on it.
+///
 /// # Errors
 /// [`SolveError`] when the start is not finite.
 pub fn refine(
@@ -64,6 +67,10 @@ pub fn refine(
     let start_m = search.nearest(start_m);
     let first = evaluator.linearise(&start_m)?;
     let value = first.value;
+    if value.minus_two_ln.is_infinite() {
+        // From inside an obstacle no step can be compared with where it begins.
+        return Ok(Minimum { position_m: start_m, value, ended: Ended::IterationLimit, iterations: 0 });
+    }
     let method = LevenbergMarquardt::new(*search, first);
     let outcome = Executor::new(Whitened { evaluator: RefCell::new(evaluator) }, method)
         .configure(|state| state.param(start_m).cost(value.minus_two_ln).max_iters(ITERATION_LIMIT))

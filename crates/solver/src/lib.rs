@@ -78,7 +78,7 @@ pub use consensus::{Consensus, consensus};
 pub use covariance::{Covariance, Ellipse, chi_square_exceedance, chi_square_quantile, covariance};
 pub use error::SolveError;
 pub use fix::{AMBIGUOUS, AntennaFit, Fit, Fix, Flag, locate};
-pub use impossible::{ImpossibleDelay, SLACK_SIGMAS, set_aside};
+pub use impossible::{ImpossibleDelay, LATE_SCALES, SLACK_SIGMAS, set_aside};
 pub use modes::Mode;
 pub use nalgebra;
 pub use obstacle::Obstacle;

@@ -10,7 +10,8 @@
 //! Where an obstacle stands in the way, the direct wave does not arrive; what arrives is later by an excess taken as
 //! exponential with mean `late_scale_s`. It enters with the first two moments of that density: the expected
 //! arrival is later by the mean, and its variance is greater by the mean squared. The determinants of S keep the
-//! density normalised, so a place gains nothing from being in shadow.
+//! density normalised, so a place gains nothing from being in shadow. Inside an obstacle there is no source that any
+//! antenna could hear: the likelihood is zero there.
 
 use std::collections::HashMap;
 
@@ -170,6 +171,11 @@ impl Likelihood {
         !self.prisms.iter().any(|prism| prism.blocks(&self.positions_m[index], at_m))
     }
 
+    /// Whether the place is inside an obstacle, at least `deep_m` from its surface.
+    pub(crate) fn is_walled_in(&self, at_m: &Vector3<f64>, deep_m: f64) -> bool {
+        self.prisms.iter().any(|prism| prism.contains(at_m, deep_m))
+    }
+
     fn shadowed(&self, at_m: &Vector3<f64>) -> Mask {
         if self.prisms.is_empty() {
             return 0;
@@ -297,7 +303,7 @@ impl<'a> Evaluator<'a> {
         self.likelihood
     }
 
-    /// The likelihood of a source at `at_m`.
+    /// The likelihood of a source at `at_m`; -2 ln of it is infinite inside an obstacle.
     ///
     /// # Errors
     /// [`SolveError::NotFinite`] for a place that is not finite.
@@ -307,7 +313,11 @@ impl<'a> Evaluator<'a> {
         }
         let shadowed = self.likelihood.shadowed(at_m);
         self.travel(at_m, shadowed);
-        self.with_weights(shadowed, |_, _| ()).map(|(value, ())| value).ok_or(SolveError::Covariance)
+        let (mut value, ()) = self.with_weights(shadowed, |_, _| ()).ok_or(SolveError::Covariance)?;
+        if shadowed != 0 && self.likelihood.is_walled_in(at_m, 0.0) {
+            value.minus_two_ln = f64::INFINITY;
+        }
+        Ok(value)
     }
 
     /// The whitened residuals and their derivative about `at_m`, the weights held as they are there.
@@ -320,7 +330,7 @@ impl<'a> Evaluator<'a> {
         }
         let shadowed = self.likelihood.shadowed(at_m);
         self.travel(at_m, shadowed);
-        let (value, columns) = self
+        let (mut value, columns) = self
             .with_weights(shadowed, |weights, evaluator| {
                 [0, 1, 2].map(|axis| {
                     evaluator.whiten_direction(weights, axis);
@@ -328,6 +338,9 @@ impl<'a> Evaluator<'a> {
                 })
             })
             .ok_or(SolveError::Covariance)?;
+        if shadowed != 0 && self.likelihood.is_walled_in(at_m, 0.0) {
+            value.minus_two_ln = f64::INFINITY;
+        }
         Ok(Linearised { value, residuals: self.whitened.clone(), columns })
     }
 
@@ -344,6 +357,7 @@ impl<'a> Evaluator<'a> {
     ) -> Result<Option<DMatrix<f64>>, SolveError> {
         let linearised = self.linearise(at_m)?;
         let n = self.residuals.len();
+        let unknowns = unknowns.clamp(1, 3);
         let columns = DMatrix::from_fn(n, unknowns, |row, axis| linearised.columns[axis][row]);
         let Some(svd) = columns.try_svd(true, true, f64::EPSILON, SVD_SWEEPS) else { return Ok(None) };
         if svd.singular_values.min() <= LEAST_CONDITION * svd.singular_values.max() {
@@ -372,8 +386,8 @@ impl<'a> Evaluator<'a> {
         Ok(self.residuals.iter().map(|residual| residual - common).collect())
     }
 
-    /// A lower bound of -2 ln likelihood over the box (`around`: the shadows over a box it lies in), and how far the whitened residuals move within it at
-    /// most; see [`crate::branch_and_bound`] for the argument.
+    /// A lower bound of -2 ln likelihood over the box (`around`: the shadows over a box it lies in), and how far the
+    /// whitened residuals move within it at most; see [`crate::branch_and_bound`] for the argument.
     pub(crate) fn bound(
         &mut self,
         centre_m: &Vector3<f64>,
@@ -414,7 +428,9 @@ impl<'a> Evaluator<'a> {
         };
         let excess = (determinants - likelihood.least_determinants).max(0.0);
         let uniform = part == 0;
-        let at_centre = (uniform && likelihood.isotropic).then(|| norm(&self.whitened).powi(2) + excess);
+        // In shadow the centre may be inside an obstacle, which is asked only of the places that need it.
+        let at_centre =
+            (part | whole == 0 && likelihood.isotropic).then(|| norm(&self.whitened).powi(2) + excess);
         self.bounding.insert(key, weights);
         // What is dropped from the bound still moves the likelihood where it is clear.
         let steps = if uniform { steps } else { self.clear_steps(whole, half_m).unwrap_or(steps) };

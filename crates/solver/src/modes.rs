@@ -39,7 +39,7 @@ pub(crate) fn find(
     starts: Vec<Minimum>,
 ) -> Result<(Vec<Mode>, Vec<usize>), SolveError> {
     let mut minima: Vec<Minimum> = Vec::new();
-    for start in starts {
+    for start in starts.into_iter().filter(|start| start.value.minus_two_ln.is_finite()) {
         add(evaluator, &mut minima, start)?;
     }
     let mut order: Vec<usize> = (0..cells.len()).collect();
@@ -139,7 +139,7 @@ fn share_out(
         let nearest = (0..minima.len())
             .map(|mode| (mode, distance(mode, &cell.centre_m)))
             .fold((0, f64::INFINITY), |a, b| if b.1 < a.1 { b } else { a });
-        masses[nearest.0] += cell.measure() * (-0.5 * (cell.minus_two_ln - least)).exp();
+        masses[nearest.0] += cell.mass(least);
         owner.push(nearest.0);
     }
     let total: f64 = masses.iter().sum();

@@ -26,7 +26,7 @@ impl Obstacle {
     /// Whether the point lies inside the prism, its surface not included.
     #[must_use]
     pub fn contains(&self, point_m: &Vector3<f64>) -> bool {
-        self.convex_pieces().iter().any(|piece| piece.faces.iter().all(|face| face.height_m(point_m) < 0.0))
+        self.convex_pieces().iter().any(|piece| piece.contains(point_m, 0.0))
     }
 
     /// The prism cut into convex ones. Shadows of convex bodies are convex, which is what lets a whole box of
@@ -36,11 +36,14 @@ impl Obstacle {
         if signed_area(&corners) < 0.0 {
             corners.reverse();
         }
-        let polygons = if is_convex(&corners) { vec![corners] } else { triangles(corners) };
+        let polygons = if is_convex(&corners) { vec![corners.clone()] } else { triangles(corners.clone()) };
+        let is_wall = |from: &Vector2<f64>, to: &Vector2<f64>| {
+            (0..corners.len()).any(|i| corners[i] == *from && corners[(i + 1) % corners.len()] == *to)
+        };
         polygons
             .into_iter()
             .filter(|polygon| signed_area(polygon) > 0.0)
-            .map(|polygon| ConvexPrism::new(&polygon, self.base_m, self.top_m))
+            .map(|polygon| ConvexPrism::new(&polygon, is_wall, self.base_m, self.top_m))
             .collect()
     }
 }
@@ -50,6 +53,8 @@ impl Obstacle {
 struct Face {
     normal: Vector3<f64>,
     offset_m: f64,
+    /// Whether it is a wall of the obstacle, and not a cut between two pieces of it.
+    wall: bool,
 }
 
 impl Face {
@@ -80,20 +85,35 @@ pub(crate) enum Shadow {
 const TOUCH_M: f64 = 1e-9;
 
 impl ConvexPrism {
-    /// `corners` counter-clockwise.
-    fn new(corners: &[Vector2<f64>], base_m: f64, top_m: f64) -> Self {
+    /// `corners` counter-clockwise; `is_wall` tells which sides are walls and which are cuts.
+    fn new(
+        corners: &[Vector2<f64>],
+        is_wall: impl Fn(&Vector2<f64>, &Vector2<f64>) -> bool,
+        base_m: f64,
+        top_m: f64,
+    ) -> Self {
         let mut faces = vec![
-            Face { normal: Vector3::z(), offset_m: top_m },
-            Face { normal: -Vector3::z(), offset_m: -base_m },
+            Face { normal: Vector3::z(), offset_m: top_m, wall: true },
+            Face { normal: -Vector3::z(), offset_m: -base_m, wall: true },
         ];
         for (index, start) in corners.iter().enumerate() {
-            let edge = corners[(index + 1) % corners.len()] - start;
+            let end = corners[(index + 1) % corners.len()];
+            let edge = end - start;
             if edge.norm() > 0.0 {
                 let outward = Vector3::new(edge.y, -edge.x, 0.0) / edge.norm();
-                faces.push(Face { normal: outward, offset_m: outward.xy().dot(start) });
+                let offset_m = outward.xy().dot(start);
+                faces.push(Face { normal: outward, offset_m, wall: is_wall(start, &end) });
             }
         }
         Self { faces }
+    }
+
+    /// Whether the point lies inside, more than `deep_m` from every face.
+    pub(crate) fn contains(&self, point_m: &Vector3<f64>, deep_m: f64) -> bool {
+        // A cut belongs to both pieces, so that no gap is left between them.
+        self.faces
+            .iter()
+            .all(|face| face.height_m(point_m) < if face.wall || deep_m > 0.0 { -deep_m } else { TOUCH_M })
     }
 
     /// Whether the way between the points passes through the inside.
@@ -106,6 +126,7 @@ impl ConvexPrism {
         // Clip the way against one half-space after the other; `near..far` is what is left of 0..1.
         let (mut near, mut far) = (0.0_f64, 1.0_f64);
         for face in &self.faces {
+            let grown_m = if face.wall { grown_m } else { grown_m.max(TOUCH_M) };
             let start = face.height_m(from_m) - grown_m;
             let end = face.height_m(to_m) - grown_m;
             if start > 0.0 && end > 0.0 {
@@ -234,6 +255,17 @@ mod tests {
         assert!(house.contains(&Vector3::new(1.0, 3.0, 1.0)));
         assert!(!house.blocks(&inside_notch, &Vector3::new(9.0, 9.0, 1.0)));
         assert!(house.blocks(&inside_notch, &Vector3::new(-9.0, 3.0, 1.0)));
+    }
+
+    #[test]
+    fn no_way_slips_through_between_the_pieces() {
+        // Along the cut of an L, through its inner corner.
+        let house = angled();
+        assert!(house.blocks(&Vector3::new(-3.0, -3.0, 1.0), &Vector3::new(6.0, 6.0, 1.0)));
+        for share in 1..20 {
+            let at = f64::from(share) * 0.1;
+            assert!(house.contains(&Vector3::new(at, at, 1.0)), "{at}");
+        }
     }
 
     #[test]

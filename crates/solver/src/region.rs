@@ -3,6 +3,7 @@
 use nalgebra::Vector3;
 
 use crate::branch_and_bound::Cell;
+use crate::likelihood::unit_or_zero;
 use crate::site::SearchBox;
 
 /// The smallest set of places that holds the source with the probability stated: every place in it is likelier than
@@ -17,18 +18,19 @@ pub struct Region {
     pub min_m: Vector3<f64>,
     /// Highest corner of the box around it, in metres.
     pub max_m: Vector3<f64>,
-    /// Whether it keeps clear of the edge of the search box. If not, the source may lie outside.
+    /// Whether it keeps clear of the edge of the search box. If not, the source may lie outside. The underside of a box
+    /// that reaches down to the ground (z = 0) or below is no edge: no source lies deeper.
     pub bounded: bool,
     /// A place belongs to the region when its -2 ln likelihood is at most this.
     pub level: f64,
 }
 
-/// Gathers the cells of highest density until they hold `confidence`. None without cells.
+/// Gathers the cells of highest density until they hold `confidence`. None without cells that hold anything.
 pub(crate) fn highest_density(cells: &[Cell], search: &SearchBox, confidence: f64) -> Option<Region> {
     let mut order: Vec<&Cell> = cells.iter().collect();
     order.sort_by(|a, b| a.minus_two_ln.total_cmp(&b.minus_two_ln));
-    let first = order.first()?;
-    let mass = |cell: &Cell| cell.measure() * (-0.5 * (cell.minus_two_ln - first.minus_two_ln)).exp();
+    let first = order.first().filter(|first| first.minus_two_ln.is_finite())?;
+    let mass = |cell: &Cell| cell.mass(first.minus_two_ln);
     let total: f64 = order.iter().map(|cell| mass(cell)).sum();
     let mut region = Region {
         confidence,
@@ -53,11 +55,12 @@ pub(crate) fn highest_density(cells: &[Cell], search: &SearchBox, confidence: f6
     Some(region)
 }
 
-/// Whether the cell lies at the edge of the search box; the plane of a plane search is no edge.
+/// Whether the cell lies at the edge of the search box; the plane of a plane search is no edge, and neither is the ground.
 fn touches_edge(cell: &Cell, search: &SearchBox) -> bool {
     (0..search.unknowns()).any(|axis| {
         let slack = 1e-9 * (search.max_m[axis] - search.min_m[axis]);
-        cell.centre_m[axis] - cell.half_m[axis] <= search.min_m[axis] + slack
+        let ground = axis == 2 && search.min_m.z <= 0.0;
+        (!ground && cell.centre_m[axis] - cell.half_m[axis] <= search.min_m[axis] + slack)
             || cell.centre_m[axis] + cell.half_m[axis] >= search.max_m[axis] - slack
     })
 }
@@ -89,10 +92,13 @@ pub(crate) fn bearing(
     confidence: f64,
 ) -> Option<Bearing> {
     let least = cells.iter().map(|cell| cell.minus_two_ln).reduce(f64::min)?;
-    let weigh = |cell: &Cell| cell.measure() * (-0.5 * (cell.minus_two_ln - least)).exp();
+    if least.is_infinite() {
+        return None;
+    }
+    let weigh = |cell: &Cell| cell.mass(least);
     let total: f64 = cells.iter().map(weigh).sum();
     let mean: Vector3<f64> =
-        cells.iter().map(|cell| (cell.centre_m - from_m).normalize() * (weigh(cell) / total)).sum();
+        cells.iter().map(|cell| unit_or_zero(&(cell.centre_m - from_m)) * (weigh(cell) / total)).sum();
     let azimuth = mean.x.atan2(mean.y);
     let elevation = mean.z.atan2(mean.xy().norm());
     let (mut azimuth_variance, mut elevation_variance) = (0.0, 0.0);

@@ -2,6 +2,7 @@
 
 use nalgebra::Vector3;
 
+use crate::error::SolveError;
 use crate::obstacle::Obstacle;
 
 /// Speed of light in vacuum, m/s (exact; SI definition of the metre).
@@ -24,6 +25,41 @@ pub struct Site {
     pub search: SearchBox,
     /// What is believed before any pulse is heard.
     pub priors: Priors,
+}
+
+impl Site {
+    /// Whether assets, priors and search box are usable; antennas and arrivals are checked with each other.
+    ///
+    /// # Errors
+    /// [`SolveError`] with the first thing out of its range.
+    pub fn check(&self) -> Result<(), SolveError> {
+        let range = |good: bool, what, found, expected| {
+            if good { Ok(()) } else { Err(SolveError::Site { what, found, expected }) }
+        };
+        let SearchBox { min_m, max_m } = &self.search;
+        let finite = min_m.iter().chain(max_m.iter()).all(|value| value.is_finite());
+        if !(finite && min_m.x < max_m.x && min_m.y < max_m.y && min_m.z <= max_m.z) {
+            return Err(SolveError::SearchBox);
+        }
+        let Priors { elsewhere, late, late_scale_s } = self.priors;
+        range((0.0..=1.0).contains(&elsewhere), "the prior of elsewhere", elsewhere, "0 to 1")?;
+        range((0.0..=1.0).contains(&late), "the prior of a late arrival", late, "0 to 1")?;
+        range(
+            late_scale_s > 0.0 && late_scale_s.is_finite(),
+            "the scale of late arrivals in seconds",
+            late_scale_s,
+            "more than 0",
+        )?;
+        for asset in &self.assets {
+            let ends = asset.from_m.iter().chain(asset.to_m.iter());
+            if !ends.chain([&asset.radius_m]).all(|value| value.is_finite()) {
+                return Err(SolveError::NotFinite { what: "the place or radius of an asset" });
+            }
+            let weight = asset.weight;
+            range(weight > 0.0 && weight.is_finite(), "the weight of an asset", weight, "more than 0")?;
+        }
+        Ok(())
+    }
 }
 
 /// One antenna and how well its place and its chain are known.
@@ -173,7 +209,8 @@ impl SearchBox {
 pub struct Priors {
     /// Probability that the source is on none of the assets.
     pub elsewhere: f64,
-    /// Probability that an arrival with a clear line of sight is late all the same.
+    /// Probability that an arrival with a clear line of sight is late all the same. Kept for the mixture of direct and late
+    /// arrivals; the likelihood does not use it yet.
     pub late: f64,
     /// Mean excess of a late arrival over the direct way, in seconds.
     pub late_scale_s: f64,

@@ -153,9 +153,9 @@ pub struct Bearing {
 /// How well the times agree with the position.
 #[derive(Debug, Clone, Copy, PartialEq, Serialize, Deserialize)]
 pub struct Fit {
-    /// Sum of squared whitened residuals.
+    /// Sum of squared whitened residuals of the antennas that see the position.
     pub chi_square: f64,
-    /// Antennas used - 1 - unknown coordinates.
+    /// Antennas used that see the position - 1 - unknown coordinates: an arrival that came round an obstacle checks nothing.
     pub degrees_of_freedom: usize,
     /// Probability of a chi-square at least as large by chance; none with no degree of freedom.
     pub p_value: Option<f64>,
@@ -241,6 +241,11 @@ pub enum Flag {
     AntennaEarly,
     /// The region touches the edge of the search volume.
     RegionTouchesSearchEdge,
+    /// The position rests on arrivals that came round an obstacle, late by unknown amounts; nothing is stated.
+    Hidden,
+    /// The captures scatter far more than their sigmas allow: the sigmas are wrong, or more than one source discharges;
+    /// nothing is stated.
+    Scattered,
 }
 
 #[cfg(test)]
@@ -410,6 +415,8 @@ mod tests {
             Flag::AntennaLate,
             Flag::AntennaEarly,
             Flag::RegionTouchesSearchEdge,
+            Flag::Hidden,
+            Flag::Scattered,
         ];
         assert_eq!(
             serde_json::to_value(flags).unwrap(),
@@ -420,7 +427,9 @@ mod tests {
                 "poor-fit",
                 "antenna-late",
                 "antenna-early",
-                "region-touches-search-edge"
+                "region-touches-search-edge",
+                "hidden",
+                "scattered"
             ])
         );
         let statements = [Statement::One, Statement::OneOf, Statement::Elsewhere, Statement::CannotTell];

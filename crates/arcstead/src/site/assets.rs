@@ -10,10 +10,10 @@ const KNOWN: &[&str] = &["name", "kind", "at_m", "from_m", "to_m", "radius_m", "
 const RADIUS_M_DEFAULT: f64 = 0.3;
 const WEIGHT_DEFAULT: f64 = 1.0;
 
-/// Reads the tables; an asset with a mistake that leaves it without a value is left out.
-pub(super) fn read(whole: &Section<'_>) -> Vec<Asset> {
+/// Reads the tables, with the line and column of each; an asset with a mistake that leaves it without a value is left out.
+pub(super) fn read(whole: &Section<'_>) -> (Vec<Asset>, Vec<(usize, usize)>) {
     let mut names = Taken::new("the asset name");
-    let mut assets = Vec::new();
+    let (mut assets, mut places) = (Vec::new(), Vec::new());
     for section in whole.tables("asset", KNOWN) {
         let name = section.needed_name("name");
         if let Some(name) = &name {
@@ -33,7 +33,8 @@ pub(super) fn read(whole: &Section<'_>) -> Vec<Asset> {
         let weight = section.number_or("weight", &WEIGHT, WEIGHT_DEFAULT);
         if let (Some(name), Some(from_m), Some(to_m)) = (name, from_m.or(at_m), to_m.or(at_m)) {
             assets.push(Asset { name, kind, from_m, to_m, radius_m, weight });
+            places.push(section.place());
         }
     }
-    assets
+    (assets, places)
 }

@@ -53,6 +53,7 @@ pub struct Site {
 #[derive(Debug, Clone, PartialEq, Default)]
 pub(super) struct Places {
     pub(super) antennas: Vec<(usize, usize)>,
+    pub(super) assets: Vec<(usize, usize)>,
     pub(super) stances: Vec<(usize, usize)>,
 }
 

@@ -162,6 +162,12 @@ pub enum MistakeKind {
     /// Too few antennas to find a place (asked by `locate`).
     #[error("{found} antennas; a place with {unknowns} unknown coordinates needs at least {needed}")]
     TooFewAntennas { found: usize, unknowns: usize, needed: usize },
+    /// An asset where nothing is searched (asked by `locate`).
+    #[error("asset `{asset}` reaches outside the search box; widen [search] so that it holds every asset")]
+    AssetOutsideSearch { asset: String },
+    /// An asset that no antenna could hear (asked by `locate`).
+    #[error("asset `{asset}` lies inside the obstacle `{obstacle}`, from where no antenna can hear it")]
+    AssetInsideObstacle { asset: String, obstacle: String },
     /// Two antennas at one place (asked by `locate`).
     #[error(
         "antennas `{first}` and `{second}` stand at the same place in stance `{stance}`; expected them apart"

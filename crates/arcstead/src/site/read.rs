@@ -145,7 +145,7 @@ fn walk(whole: &Section<'_>, positions: Positions, path: &Path) -> Option<Site> 
     let air = chapters::air(whole);
     let priors = chapters::verdict(whole);
     let antennas = antennas::read(whole, positions == Positions::Free);
-    let assets = assets::read(whole);
+    let (assets, asset_places) = assets::read(whole);
     let obstacles = areas::obstacles(whole);
     let stand_areas = areas::stand_areas(whole);
     let keep_outs = areas::keep_outs(whole);
@@ -179,6 +179,6 @@ fn walk(whole: &Section<'_>, positions: Positions, path: &Path) -> Option<Site> 
         free_antennas: antennas.free,
         sha256: String::new(),
         path: path.to_owned(),
-        places: Places { antennas: antennas.places, stances: stance_places },
+        places: Places { antennas: antennas.places, assets: asset_places, stances: stance_places },
     })
 }

@@ -1,5 +1,7 @@
 //! What `locate` asks of a site beyond a file without mistakes.
 
+use nalgebra::Vector3;
+
 use super::contents::{MAIN_STANCE, Site};
 use super::mistake::{Mistake, MistakeKind, SiteError};
 
@@ -8,7 +10,8 @@ const SAME_PLACE_M: f64 = 1e-3;
 
 impl Site {
     /// Whether a position can be looked for: enough antennas (one more than unknown coordinates), no two at the same
-    /// place, none inside an obstacle or a keep-out, in every stance, and none without a position.
+    /// place, none inside an obstacle or a keep-out, in every stance, and none without a position; every asset in the
+    /// search box and none inside an obstacle.
     ///
     /// # Errors
     /// [`SiteError::Mistakes`] with everything that stands in the way.
@@ -61,6 +64,23 @@ impl Site {
                     let keep_out = keep_out.name.clone();
                     report(place(index), MistakeKind::InsideKeepOut { stance, antenna, keep_out });
                 }
+            }
+        }
+        for (asset, &place) in self.geometry.assets.iter().zip(&self.places.assets) {
+            let search = &self.geometry.search;
+            // On a plane the height of an asset is its own affair.
+            let held = |point_m: &Vector3<f64>| {
+                (0..search.unknowns())
+                    .all(|axis| (search.min_m[axis]..=search.max_m[axis]).contains(&point_m[axis]))
+            };
+            if !held(&asset.from_m) || !held(&asset.to_m) {
+                report(place, MistakeKind::AssetOutsideSearch { asset: asset.name.clone() });
+            }
+            let (from_m, to_m) = (&asset.from_m, &asset.to_m);
+            let within = self.geometry.obstacles.iter().find(|o| o.contains(from_m) && o.contains(to_m));
+            if let Some(obstacle) = within {
+                let (asset, obstacle) = (asset.name.clone(), obstacle.name.clone());
+                report(place, MistakeKind::AssetInsideObstacle { asset, obstacle });
             }
         }
         if mistakes.is_empty() {

@@ -23,6 +23,7 @@ pub(crate) fn run(asked: &ArrivalsArguments, console: &mut Console<'_>) -> Resul
         &asked.timing.options(),
         asked.threads.map_or(0, usize::from),
         &console.talk,
+        &output,
     )?;
     let text = match asked.output.format() {
         Format::Table => table::arrivals::text(&site, &timed, console.glyphs, console.talk.verbose),

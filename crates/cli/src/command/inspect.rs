@@ -12,6 +12,7 @@ use crate::{sheet, status, table};
 
 pub(crate) fn run(asked: &InspectArguments, console: &mut Console<'_>) -> Result<u8, Failure> {
     let output = Output::check(asked.output.output.as_deref(), asked.captures.iter().map(AsRef::as_ref))?;
+    output.spare(&arcstead::formats::find_captures(&asked.captures)?.files)?;
     let band_hz = asked.band.map(|band| (band.low_hz, band.high_hz));
     let sample_rate_hz = asked.sample_rate.map(|rate_gsps| rate_gsps * 1e9);
     let progress = Progress::begin(&console.talk, None);

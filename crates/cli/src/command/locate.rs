@@ -21,7 +21,7 @@ pub(crate) fn run(asked: &LocateArguments, console: &mut Console<'_>) -> Result<
     let threads = asked.threads.map_or(0, usize::from);
     let options = LocateOptions { confidence: asked.confidence, each: asked.each, threads };
     let timed = if asked.arrivals.is_empty() {
-        read_visit(&site, &asked.captures, &asked.timing.options(), threads, &console.talk)?
+        read_visit(&site, &asked.captures, &asked.timing.options(), threads, &console.talk, &output)?
     } else {
         TimedVisit::from_tables(&site, &asked.arrivals)?
     };

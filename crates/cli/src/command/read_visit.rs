@@ -8,23 +8,29 @@ use arcstead::{ArrivalOptions, TimedVisit, Visit};
 
 use crate::console::Talk;
 use crate::failure::Failure;
+use crate::output::Output;
 use crate::progress::Progress;
 use crate::stance_argument;
 
 /// Reads and times the captures that `arguments` name, and warns of those that cannot be read.
 ///
 /// # Errors
-/// When the arguments name nothing that can be read, are of several stances, or no capture at all could be read.
+/// When the arguments name nothing that can be read, are of several stances, `output` would replace one of the files, or
+/// no capture at all could be read.
 pub(super) fn read_visit(
     site: &Site,
     arguments: &[OsString],
     options: &ArrivalOptions,
     threads: usize,
     talk: &Talk<'_>,
+    output: &Output,
 ) -> Result<TimedVisit, Failure> {
     let (stance, paths) = stance_argument::split(site, arguments)?;
     let visit = Visit::open(site, &stance, &paths)?;
-    talk.note_all(&visit.skipped().iter().map(skipped).collect::<Vec<_>>());
+    output.spare(&visit.files())?;
+    // The truth that `simulate` writes beside its captures is no capture, and nobody wonders.
+    let wondered = |skipped: &&Skipped| !skipped.path.ends_with("truth.json");
+    talk.note_all(&visit.skipped().iter().filter(wondered).map(skipped).collect::<Vec<_>>());
     let progress = Progress::begin(talk, Some(visit.capture_count()));
     let timed = visit.time(options, threads, &progress);
     progress.end();

@@ -77,6 +77,7 @@ fn one_source(
     verbose: bool,
 ) -> String {
     let mut text = layout::headline(&verdict::headline(source));
+    text += &verdict::unchecked(source).map_or_else(String::new, |text| layout::paragraph(&text));
     text += &layout::paragraph(&captures_of(document, index, source));
     text += &stopped(document).map_or_else(String::new, |stopped| layout::paragraph(&stopped));
     text += "\n";
@@ -93,7 +94,7 @@ fn one_source(
     text += &layout::labelled(&rows);
 
     text += "\n";
-    let unreliable = source.flags.contains(&Flag::PoorFit);
+    let unreliable = source.flags.contains(&Flag::PoorFit) || source.flags.contains(&Flag::Hidden);
     let asset = if unreliable { "Asset (unreliable ranking)" } else { "Asset" };
     text += &layout::columns(
         &[(asset, Side::Left), ("Probability", Side::Right)],
@@ -130,6 +131,8 @@ fn antennas(source: &SourceResult, glyphs: Glyphs) -> String {
         ("Line of sight", Side::Left),
         ("Used", Side::Left),
     ];
+    // Where nothing can be checked the residuals are zero by construction: printed, they would look like a perfect fit.
+    let checked = source.fit.p_value.is_some() || source.flags.contains(&Flag::PoorFit);
     let rows: Vec<Vec<String>> = source
         .antennas
         .iter()
@@ -142,7 +145,7 @@ fn antennas(source: &SourceResult, glyphs: Glyphs) -> String {
             vec![
                 antenna.name.clone(),
                 decimals(antenna.snr_db, 0),
-                signed(antenna.residual_ns),
+                signed(antenna.residual_ns.filter(|_| checked || !antenna.used)),
                 decimals(antenna.sigma_ns, 2),
                 if antenna.line_of_sight { "clear" } else { "hidden" }.into(),
                 used.into(),

@@ -33,7 +33,7 @@ pub(super) fn rows(source: &SourceResult, glyphs: Glyphs) -> Vec<(String, String
     if !others.is_empty() {
         add(
             "Other places",
-            format!("{}; weighed by the arrivals alone, without the assets", others.join("; ")),
+            format!("the arrivals alone would also fit {}; the assets are weighed above", others.join("; ")),
         );
     }
     rows
@@ -57,9 +57,11 @@ fn height(source: &SourceResult, glyphs: Glyphs) -> String {
         }
         None => String::new(),
     };
-    // The region holds every place that fits.
-    let all = if source.flags.contains(&Flag::MirrorAmbiguity) { ", other places included" } else { "" };
-    format!("{sigma}{} region {low} to {high} m{all}", level(region.confidence))
+    // The region holds every place that fits: its heights say nothing of this one where there are others.
+    if source.flags.contains(&Flag::MirrorAmbiguity) && !sigma.is_empty() {
+        return sigma.trim_end_matches("; ").to_owned();
+    }
+    format!("{sigma}{} region {low} to {high} m", level(region.confidence))
 }
 
 /// Bearing and, in space, elevation.

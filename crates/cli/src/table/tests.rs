@@ -144,8 +144,8 @@ fn one_asset() {
         "Position x 11.90, y 8.10, z 5.30 m",
         "95 % ellipse 0.30 by 0.20 m, half axes; the longer one 41.0° from north",
         "5.30 ± 0.20 m (one sigma); 95 % region 4.90 to 5.80 m Bearing 62.1 ± 0.4° from north, 24.0 ± 0.6° up",
-        "Other places x 3.10, y 20.20, z 4.00 m (2 %)",
-        "1 capture outside the source told 1 capture rejected: 1 x no pulse",
+        "Other places the arrivals alone would also fit x 3.10, y 20.20, z 4.00 m (2 %)",
+        "1 capture outside the source told 1 capture without enough pulses, or not readable: 1 x no pulse",
         "A1 21 +0.00 0.08 clear yes",
         "A2 12 +9.50 0.08 hidden left out",
         "A3 - - - clear no",
@@ -250,7 +250,10 @@ fn no_source() {
     let joined = joined(&text);
     assert!(joined.contains("Marl Bank: 40 captures, none of them tells a place."), "{text}");
     assert!(joined.contains("With a pulse 1 capture, without a common place"), "{text}");
-    assert!(joined.contains("Rejected 1 capture rejected: 1 x no pulse"), "{text}");
+    assert!(
+        joined.contains("Rejected 1 capture without enough pulses, or not readable: 1 x no pulse"),
+        "{text}"
+    );
 }
 
 #[test]

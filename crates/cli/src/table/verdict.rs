@@ -30,11 +30,26 @@ pub(super) fn headline(source: &SourceResult) -> String {
         _ if source.flags.contains(&Flag::PoorFit) => {
             "Cannot tell: the arrivals fit no place within their errors".into()
         }
+        _ if source.flags.contains(&Flag::Scattered) => {
+            "Cannot tell: the captures do not agree on one source".into()
+        }
+        _ if source.flags.contains(&Flag::Hidden) => {
+            "Cannot tell: only a place hidden from some antennas explains the arrivals".into()
+        }
         _ => match candidates(source, &[]).as_slice() {
             [] | [_] => "Cannot tell on which asset it is".into(),
             several => format!("Cannot tell: {}", either(several)),
         },
     }
+}
+
+/// That no arrival could be checked, where something is stated all the same.
+pub(super) fn unchecked(source: &SourceResult) -> Option<String> {
+    let stated = source.verdict.statement != Statement::CannotTell;
+    (stated && source.fit.p_value.is_none()).then(|| {
+        let used = source.antennas.iter().filter(|antenna| antenna.used).count();
+        format!("Not checked: with {used} antennas a wrong cable, channel or position would not show.")
+    })
 }
 
 /// What else it could be, or the candidates where the first line could not name them.
@@ -54,7 +69,7 @@ pub(super) fn other_candidates(source: &SourceResult) -> Option<(String, String)
             &candidates(source, &[ELSEWHERE.to_owned()]),
             "none of the assets is above 1 %",
         ),
-        _ if source.flags.contains(&Flag::PoorFit) => {
+        _ if source.flags.contains(&Flag::PoorFit) || source.flags.contains(&Flag::Hidden) => {
             row("Unreliable", &candidates(source, &[]), "nothing is above 1 %")
         }
         _ => None,

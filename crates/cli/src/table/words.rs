@@ -19,6 +19,8 @@ pub(super) fn flag_words(flag: Flag) -> &'static str {
         Flag::AntennaLate => "an arrival came too late and was left out",
         Flag::AntennaEarly => "an arrival came too early and was left out",
         Flag::RegionTouchesSearchEdge => "the source may lie outside the search box",
+        Flag::Hidden => "the place is hidden from some of the antennas",
+        Flag::Scattered => "the captures do not agree on one place",
         _ => "something this table has no words for; see the JSON result",
     }
 }
@@ -33,6 +35,8 @@ pub(crate) fn flag_name(flag: Flag) -> &'static str {
         Flag::AntennaLate => "antenna-late",
         Flag::AntennaEarly => "antenna-early",
         Flag::RegionTouchesSearchEdge => "region-touches-search-edge",
+        Flag::Hidden => "hidden",
+        Flag::Scattered => "scattered",
         _ => "other",
     }
 }
@@ -77,7 +81,8 @@ pub(super) fn rejected(counts: &CaptureCounts) -> String {
     let mut found: Vec<_> = found.into_iter().collect();
     found.sort_by(|(a, a_count), (b, b_count)| b_count.cmp(a_count).then(a.cmp(b)));
     let told = found.iter().take(MOST_REASONS).map(|(reason, count)| format!("{count} x {reason}"));
-    let mut lines = vec![format!("{} rejected:", count(counts.rejected.len(), "capture"))];
+    let mut lines =
+        vec![format!("{} without enough pulses, or not readable:", count(counts.rejected.len(), "capture"))];
     lines.extend(told);
     if found.len() > MOST_REASONS {
         lines.push(format!("and {}, -v tells them", count(found.len() - MOST_REASONS, "other reason")));
@@ -100,6 +105,8 @@ mod tests {
             Flag::AntennaLate,
             Flag::AntennaEarly,
             Flag::RegionTouchesSearchEdge,
+            Flag::Hidden,
+            Flag::Scattered,
         ] {
             assert_eq!(serde_json::to_value(flag).unwrap(), flag_name(flag));
         }
@@ -119,7 +126,7 @@ mod tests {
         };
         assert_eq!(
             not_used(&counts).unwrap(),
-            "1 capture outside the source told\n6 captures rejected:\n2 x b\n1 x a\n1 x c\nand 2 other reasons, -v \
+            "1 capture outside the source told\n6 captures without enough pulses, or not readable:\n2 x b\n1 x a\n1 x c\nand 2 other reasons, -v \
              tells them"
         );
         assert_eq!(not_used(&CaptureCounts::default()), None);
