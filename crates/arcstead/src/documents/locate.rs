@@ -248,6 +248,37 @@ pub enum Flag {
     Scattered,
 }
 
+impl Flag {
+    /// Its name in documents.
+    #[must_use]
+    pub fn name(self) -> &'static str {
+        match self {
+            Self::FewAntennas => "few-antennas",
+            Self::RangeUndetermined => "range-undetermined",
+            Self::MirrorAmbiguity => "mirror-ambiguity",
+            Self::PoorFit => "poor-fit",
+            Self::AntennaLate => "antenna-late",
+            Self::AntennaEarly => "antenna-early",
+            Self::RegionTouchesSearchEdge => "region-touches-search-edge",
+            Self::Hidden => "hidden",
+            Self::Scattered => "scattered",
+        }
+    }
+}
+
+impl Statement {
+    /// Its name in documents.
+    #[must_use]
+    pub fn name(self) -> &'static str {
+        match self {
+            Self::One => "one",
+            Self::OneOf => "one-of",
+            Self::Elsewhere => "elsewhere",
+            Self::CannotTell => "cannot-tell",
+        }
+    }
+}
+
 #[cfg(test)]
 mod tests {
     use super::*;
@@ -418,6 +449,7 @@ mod tests {
             Flag::Hidden,
             Flag::Scattered,
         ];
+        assert_eq!(serde_json::to_value(flags).unwrap(), serde_json::json!(flags.map(Flag::name)));
         assert_eq!(
             serde_json::to_value(flags).unwrap(),
             serde_json::json!([
@@ -433,6 +465,10 @@ mod tests {
             ])
         );
         let statements = [Statement::One, Statement::OneOf, Statement::Elsewhere, Statement::CannotTell];
+        assert_eq!(
+            serde_json::to_value(statements).unwrap(),
+            serde_json::json!(statements.map(Statement::name))
+        );
         assert_eq!(
             serde_json::to_value(statements).unwrap(),
             serde_json::json!(["one", "one-of", "elsewhere", "cannot-tell"])

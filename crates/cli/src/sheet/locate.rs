@@ -3,7 +3,6 @@
 use arcstead::documents::{LocateDocument, SourceResult};
 
 use super::rows::{Rows, number};
-use crate::table::words::{flag_name, statement_name};
 
 /// The columns; `--help` says what they hold.
 const COLUMNS: [&str; 38] = [
@@ -61,7 +60,7 @@ fn row(count: usize, source: &SourceResult, incomplete: bool) -> [String; 38] {
     let sigma = |axis: usize| number(source.covariance_m2.map(|covariance| covariance[axis][axis].sqrt()));
     let (region, bearing, fit) = (&source.region, &source.bearing, &source.fit);
     let first = source.assets.first();
-    let flags: Vec<&str> = source.flags.iter().map(|&flag| flag_name(flag)).collect();
+    let flags: Vec<&str> = source.flags.iter().map(|&flag| flag.name()).collect();
     [
         count.to_string(),
         source.captures.to_string(),
@@ -89,7 +88,7 @@ fn row(count: usize, source: &SourceResult, incomplete: bool) -> [String; 38] {
         number(Some(fit.chi_square)),
         fit.degrees_of_freedom.to_string(),
         number(fit.p_value),
-        statement_name(source.verdict.statement).to_owned(),
+        source.verdict.statement.name().to_owned(),
         source.verdict.assets.join(";"),
         number(Some(source.verdict.probability)),
         first.map_or_else(String::new, |asset| asset.name.clone()),

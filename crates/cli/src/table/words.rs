@@ -2,7 +2,7 @@
 
 use std::collections::HashMap;
 
-use arcstead::documents::{CaptureCounts, Flag, Statement};
+use arcstead::documents::{CaptureCounts, Flag};
 
 use super::figures::count;
 
@@ -22,32 +22,6 @@ pub(super) fn flag_words(flag: Flag) -> &'static str {
         Flag::Hidden => "the place is hidden from some of the antennas",
         Flag::Scattered => "the captures do not agree on one place",
         _ => "something this table has no words for; see the JSON result",
-    }
-}
-
-/// The name of a flag in documents.
-pub(crate) fn flag_name(flag: Flag) -> &'static str {
-    match flag {
-        Flag::FewAntennas => "few-antennas",
-        Flag::RangeUndetermined => "range-undetermined",
-        Flag::MirrorAmbiguity => "mirror-ambiguity",
-        Flag::PoorFit => "poor-fit",
-        Flag::AntennaLate => "antenna-late",
-        Flag::AntennaEarly => "antenna-early",
-        Flag::RegionTouchesSearchEdge => "region-touches-search-edge",
-        Flag::Hidden => "hidden",
-        Flag::Scattered => "scattered",
-        _ => "other",
-    }
-}
-
-/// The name of a statement in documents.
-pub(crate) fn statement_name(statement: Statement) -> &'static str {
-    match statement {
-        Statement::One => "one",
-        Statement::OneOf => "one-of",
-        Statement::Elsewhere => "elsewhere",
-        _ => "cannot-tell",
     }
 }
 
@@ -94,26 +68,6 @@ pub(super) fn rejected(counts: &CaptureCounts) -> String {
 mod tests {
     use super::*;
     use arcstead::documents::RejectedCapture;
-
-    #[test]
-    fn names_are_those_of_the_documents() {
-        for flag in [
-            Flag::FewAntennas,
-            Flag::RangeUndetermined,
-            Flag::MirrorAmbiguity,
-            Flag::PoorFit,
-            Flag::AntennaLate,
-            Flag::AntennaEarly,
-            Flag::RegionTouchesSearchEdge,
-            Flag::Hidden,
-            Flag::Scattered,
-        ] {
-            assert_eq!(serde_json::to_value(flag).unwrap(), flag_name(flag));
-        }
-        for statement in [Statement::One, Statement::OneOf, Statement::Elsewhere, Statement::CannotTell] {
-            assert_eq!(serde_json::to_value(statement).unwrap(), statement_name(statement));
-        }
-    }
 
     #[test]
     fn reasons_are_counted() {
