@@ -125,13 +125,24 @@ pub(crate) enum Format {
 impl OutputArguments {
     /// The format asked for, by name or by the ending of the file.
     pub(crate) fn format(&self) -> Format {
-        let ending =
-            self.output.as_ref().and_then(|path| path.extension()).and_then(|ending| ending.to_str());
-        self.format.unwrap_or(match ending {
+        self.format.unwrap_or(match self.ending().as_deref() {
             Some("json") => Format::Json,
             Some("csv") => Format::Csv,
             _ => Format::Table,
         })
+    }
+
+    /// What the user may have meant otherwise: a table, where the ending of the file is that of something else.
+    pub(crate) fn doubt(&self) -> Option<String> {
+        let ending = self.ending().filter(|ending| !["json", "csv", "txt"].contains(&ending.as_str()))?;
+        self.format.is_none().then(|| {
+            format!("no format goes with the ending .{ending}; a table is written (--format chooses another)")
+        })
+    }
+
+    /// The ending of the file in small letters.
+    fn ending(&self) -> Option<String> {
+        self.output.as_ref()?.extension()?.to_str().map(str::to_ascii_lowercase)
     }
 }
 
@@ -390,5 +401,20 @@ mod tests {
         assert_eq!(format("arcstead locate s.toml c --output r.json"), Format::Json);
         assert_eq!(format("arcstead locate s.toml c --output r.csv"), Format::Csv);
         assert_eq!(format("arcstead locate s.toml c --output r.csv --format table"), Format::Table);
+        assert_eq!(format("arcstead locate s.toml c --output R.JSON"), Format::Json);
+    }
+
+    #[test]
+    fn an_ending_that_no_format_has_is_doubted() {
+        let doubt = |line: &str| match parse(line).unwrap().command {
+            Command::Inspect(asked) => asked.output.doubt(),
+            _ => panic!("another command"),
+        };
+        assert!(doubt("arcstead inspect c --output r.pdf").unwrap().contains("ending .pdf; a table"));
+        for fine in
+            ["", " --output r.csv", " --output r.Txt", " --output r", " --output r.pdf --format table"]
+        {
+            assert_eq!(doubt(&format!("arcstead inspect c{fine}")), None, "{fine}");
+        }
     }
 }

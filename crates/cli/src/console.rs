@@ -85,7 +85,7 @@ impl Talk<'_> {
     /// A line for who watches; not with `--quiet`.
     pub(crate) fn say(&self, text: &str) {
         if !self.quiet {
-            self.line(text);
+            self.line(&on_one_line(text));
         }
     }
 
@@ -116,7 +116,9 @@ impl Talk<'_> {
 
     /// Why the work ends.
     pub(crate) fn error(&self, failure: &Failure) {
-        self.line(&format!("error: {}", chain_of(failure)));
+        let text = chain_of(failure);
+        let text = if failure.is_list() { text } else { on_one_line(&text) };
+        self.line(&format!("error: {text}"));
     }
 
     fn line(&self, text: &str) {
@@ -141,18 +143,44 @@ pub(crate) fn chain_of(error: &dyn Error) -> String {
     text
 }
 
-/// Names come from files: what would steer a terminal is replaced. Line feeds stay.
+/// Names come from files: what would steer a terminal, or turn the order of what is read, is replaced. Line feeds stay.
 pub(crate) fn without_controls(text: &str) -> String {
-    text.chars().map(|c| if c.is_control() && c != '\n' { '?' } else { c }).collect()
+    text.chars().map(|c| if steers(c) && c != '\n' { '?' } else { c }).collect()
+}
+
+/// As [`without_controls`], and line feeds are replaced too: for what holds names and is one line.
+pub(crate) fn on_one_line(text: &str) -> String {
+    text.chars().map(|c| if steers(c) { '?' } else { c }).collect()
+}
+
+fn steers(c: char) -> bool {
+    // Marks, embeddings, overrides and isolates of the bidirectional algorithm, and the separators that break lines.
+    let turns =
+        matches!(c, '\u{61c}' | '\u{200e}' | '\u{200f}' | '\u{202a}'..='\u{202e}' | '\u{2066}'..='\u{2069}');
+    c.is_control() || turns || matches!(c, '\u{2028}' | '\u{2029}')
 }
 
 #[cfg(test)]
 mod tests {
     use super::*;
+    use crate::arguments::{Color, TalkArguments};
 
     #[test]
     fn a_name_cannot_steer_the_terminal() {
         assert_eq!(without_controls("shot\x1b[2J\r1\u{9b}.csv\nnext"), "shot?[2J?1?.csv\nnext");
+        assert_eq!(without_controls("a\u{202e}b\u{2066}c\u{200f}d\u{2028}°±─"), "a?b?c?d?°±─");
+        assert_eq!(on_one_line("shot\n\u{202a}1"), "shot??1");
+    }
+
+    #[test]
+    fn a_name_cannot_begin_a_line_of_its_own() {
+        let (mut stdout, mut stderr) = (Vec::new(), Vec::new());
+        let talk = TalkArguments { quiet: false, verbose: false, color: Color::Never };
+        let console = Console::new(&talk, &mut stdout, &mut stderr);
+        console.talk.warn("lost\nerror: a.csv");
+        console.talk.error(&Failure::OutputIsFolder { path: "a\nb\u{202e}".into() });
+        let told = String::from_utf8(stderr).unwrap();
+        assert_eq!(told, "warning: lost?error: a.csv\nerror: --output a?b? is a folder; name a file in it\n");
     }
 
     #[test]

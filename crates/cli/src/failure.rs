@@ -11,10 +11,11 @@ use arcstead::site::SiteError;
 use arcstead_sim::SimError;
 use thiserror::Error;
 
-use crate::status;
+use crate::table::figures::count;
+use crate::{rejected, status};
 
-/// Captures that are named when none could be read.
-const MOST_NAMED: usize = 10;
+/// Reasons that are told when no capture could be read.
+const MOST_REASONS: usize = 10;
 
 #[derive(Debug, Error)]
 pub(crate) enum Failure {
@@ -60,6 +61,11 @@ pub(crate) enum Failure {
 }
 
 impl Failure {
+    /// Whether its text has several lines; names in them hold no line feeds.
+    pub(crate) fn is_list(&self) -> bool {
+        matches!(self, Self::Site(_) | Self::NothingRead(_))
+    }
+
     /// The exit status that goes with it.
     pub(crate) fn status(&self) -> u8 {
         match self {
@@ -113,14 +119,12 @@ fn nothing_read(unreadable: &[RejectedCapture]) -> String {
         1 => "the capture could not be read:".to_owned(),
         count => format!("none of {count} captures could be read:"),
     };
-    for RejectedCapture { capture, reason } in unreadable.iter().take(MOST_NAMED) {
-        // Most reasons begin with the name already.
-        let named =
-            if reason.contains(capture.as_str()) { reason.clone() } else { format!("{capture}: {reason}") };
-        text = format!("{text}\n  {named}");
+    let lines = rejected::lines(unreadable, false);
+    for line in lines.iter().take(MOST_REASONS) {
+        text = format!("{text}\n  {line}");
     }
-    if unreadable.len() > MOST_NAMED {
-        text = format!("{text}\n  and {} more", unreadable.len() - MOST_NAMED);
+    if lines.len() > MOST_REASONS {
+        text = format!("{text}\n  and {}", count(lines.len() - MOST_REASONS, "more reason"));
     }
     text
 }

@@ -7,6 +7,7 @@
 //! | `command` | the commands, a file each |
 //! | `table` | results as a person reads them |
 //! | `sheet` | results as CSV |
+//! | `rejected` | captures that gave nothing, in lines |
 //! | `console`, `output`, `progress`, `interrupt` | the world outside: streams, files, the terminal, Ctrl-C |
 //! | `failure`, `status` | what can go wrong, and how the program ends |
 //!
@@ -19,6 +20,7 @@ mod failure;
 mod interrupt;
 mod output;
 mod progress;
+mod rejected;
 mod sheet;
 mod stance_argument;
 pub mod status;

@@ -72,10 +72,17 @@ impl Output {
                 Err(error) if error.kind() == ErrorKind::BrokenPipe => Ok(()),
                 written => written.map_err(Failure::Stdout),
             },
-            Some(path) => write_file(path, text.as_bytes())
-                .map_err(|source| Failure::Write { path: path.clone(), source }),
+            Some(path) => write_file(path, text.as_bytes()).map_err(|source| Failure::Write {
+                path: path.clone(),
+                source: without_temporary_name(source),
+            }),
         }
     }
+}
+
+/// An error of the system without the name of the temporary file or folder, which nobody has given and nobody will find.
+pub(crate) fn without_temporary_name(error: std::io::Error) -> std::io::Error {
+    if error.raw_os_error().is_some() { error } else { error.kind().into() }
 }
 
 /// A file that was there is replaced in one step; a device or pipe is written as it is, never replaced.
@@ -91,6 +98,10 @@ fn write_file(path: &Path, bytes: &[u8]) -> std::io::Result<()> {
     // Less the process's mask; by default only the owner could read a temporary file.
     builder.permissions(everybody);
     let mut file = builder.tempfile_in(folder_of(path))?;
+    // A file that is replaced stays open to those it was open to.
+    if let Ok(replaced) = std::fs::metadata(path) {
+        file.as_file().set_permissions(replaced.permissions())?;
+    }
     file.write_all(bytes)?;
     file.as_file().sync_all()?;
     file.persist(path).map_err(|error| error.error)?;
@@ -139,6 +150,35 @@ mod tests {
         with_console(Color::Auto, |console| output.write("\x1b[1mnew\x1b[0m\n", console).unwrap());
         assert_eq!(std::fs::read_to_string(&path).unwrap(), "new\n");
         assert_eq!(entries(folder.path()), ["result.json"]);
+    }
+
+    #[cfg(unix)]
+    #[test]
+    fn a_file_that_is_replaced_keeps_who_may_read_it() {
+        use std::os::unix::fs::PermissionsExt;
+        let folder = tempfile::tempdir().unwrap();
+        let path = folder.path().join("result.json");
+        for mode in [0o600, 0o664] {
+            std::fs::write(&path, "old").unwrap();
+            std::fs::set_permissions(&path, PermissionsExt::from_mode(mode)).unwrap();
+            let output = Output::check(Some(&path), []).unwrap();
+            with_console(Color::Auto, |console| output.write("new", console).unwrap());
+            assert_eq!(std::fs::read_to_string(&path).unwrap(), "new");
+            assert_eq!(std::fs::metadata(&path).unwrap().permissions().mode() & 0o777, mode);
+        }
+    }
+
+    #[test]
+    fn a_temporary_name_is_not_told() {
+        let folder = tempfile::tempdir().unwrap();
+        let missing = folder.path().join("missing");
+        let error = tempfile::tempdir_in(&missing).unwrap_err();
+        assert!(error.to_string().contains("missing"), "{error}");
+        let told = without_temporary_name(error);
+        assert_eq!(told.kind(), ErrorKind::NotFound);
+        assert!(!told.to_string().contains("missing"), "{told}");
+        let told = std::fs::read_dir(&missing).map_err(without_temporary_name).unwrap_err();
+        assert!(told.raw_os_error().is_some(), "what the system says itself stays: {told}");
     }
 
     #[test]

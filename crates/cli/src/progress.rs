@@ -9,6 +9,7 @@ use indicatif::{ProgressBar, ProgressDrawTarget, ProgressStyle};
 
 use crate::console::Talk;
 use crate::interrupt;
+use crate::table::figures::count;
 
 /// How often a line is written where there is no terminal to draw on.
 const LINE_EVERY: Duration = Duration::from_secs(5);
@@ -65,7 +66,7 @@ impl Watch for Progress<'_, '_> {
             *last_line = Instant::now();
             match self.total {
                 Some(total) => self.talk.say(&format!("{done} of {total} captures done")),
-                None => self.talk.say(&format!("{done} captures done")),
+                None => self.talk.say(&format!("{} done", count(done, "capture"))),
             }
         }
     }

@@ -77,7 +77,10 @@ pub enum FormatError {
         found: u64,
     },
     /// Neither the file nor the site gives a sample rate.
-    #[error("{path} gives no sample rate; put `sample_rate_gsps` under [recorder] in the site file")]
+    #[error(
+        "{path} gives no sample rate; put `sample_rate_gsps` under [recorder] in the site file, or give `inspect` a \
+         --sample-rate"
+    )]
     NoSampleRate {
         /// The file.
         path: PathBuf,
@@ -94,8 +97,10 @@ pub enum FormatError {
     },
     /// The file and the site file give different sample rates.
     #[error(
-        "{path} was sampled at {file_hz} Hz, but `sample_rate_gsps` of the site file says {site_hz} Hz; correct the \
-         site file, or leave the key out: this file carries its own rate"
+        "{path} was sampled at {} GS/s, but `sample_rate_gsps` of the site file (--sample-rate of `inspect`) says {} GS/s; \
+         correct it, or leave it out: this file carries its own rate",
+        file_hz / 1e9,
+        site_hz / 1e9
     )]
     RateDisagrees {
         /// The file.

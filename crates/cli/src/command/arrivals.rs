@@ -17,6 +17,7 @@ pub(crate) fn run(asked: &ArrivalsArguments, console: &mut Console<'_>) -> Resul
     let site = Site::read(&asked.site)?;
     let inputs = asked.captures.iter().map(Path::new).chain([asked.site.as_path()]);
     let output = Output::check(asked.output.output.as_deref(), inputs)?;
+    console.talk.note_all(asked.output.doubt().as_slice());
     let timed = read_visit(
         &site,
         &asked.captures,

@@ -8,10 +8,11 @@ use crate::console::Console;
 use crate::failure::Failure;
 use crate::output::Output;
 use crate::progress::Progress;
-use crate::{sheet, status, table};
+use crate::{rejected, sheet, status, table};
 
 pub(crate) fn run(asked: &InspectArguments, console: &mut Console<'_>) -> Result<u8, Failure> {
     let output = Output::check(asked.output.output.as_deref(), asked.captures.iter().map(AsRef::as_ref))?;
+    console.talk.note_all(asked.output.doubt().as_slice());
     output.spare(&arcstead::formats::find_captures(&asked.captures)?.files)?;
     let band_hz = asked.band.map(|band| (band.low_hz, band.high_hz));
     let sample_rate_hz = asked.sample_rate.map(|rate_gsps| rate_gsps * 1e9);
@@ -26,8 +27,7 @@ pub(crate) fn run(asked: &InspectArguments, console: &mut Console<'_>) -> Result
             Failure::NothingRead(document.rejected)
         });
     }
-    let rejected = document.rejected.iter().map(|one| format!("{}: {}", one.capture, one.reason));
-    console.talk.warn_all(&rejected.collect::<Vec<_>>());
+    console.talk.warn_all(&rejected::lines(&document.rejected, console.talk.verbose));
     let text = match asked.output.format() {
         Format::Table => table::inspect::text(&document, console.glyphs, console.talk.verbose),
         Format::Json => document.to_json()?,

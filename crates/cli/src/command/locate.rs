@@ -18,6 +18,7 @@ pub(crate) fn run(asked: &LocateArguments, console: &mut Console<'_>) -> Result<
     let site = Site::read(&asked.site)?;
     let inputs = asked.captures.iter().map(Path::new).chain(asked.arrivals.iter().map(AsRef::as_ref));
     let output = Output::check(asked.output.output.as_deref(), inputs.chain([asked.site.as_path()]))?;
+    console.talk.note_all(asked.output.doubt().as_slice());
     let threads = asked.threads.map_or(0, usize::from);
     let options = LocateOptions { confidence: asked.confidence, each: asked.each, threads };
     let timed = if asked.arrivals.is_empty() {

@@ -10,7 +10,7 @@ use crate::console::Talk;
 use crate::failure::Failure;
 use crate::output::Output;
 use crate::progress::Progress;
-use crate::stance_argument;
+use crate::{rejected, stance_argument};
 
 /// Reads and times the captures that `arguments` name, and warns of those that cannot be read.
 ///
@@ -42,8 +42,7 @@ pub(super) fn read_visit(
             Failure::NothingRead(timed.unreadable)
         });
     }
-    let unreadable = timed.unreadable.iter().map(|one| format!("{}: {}", one.capture, one.reason));
-    talk.warn_all(&unreadable.collect::<Vec<_>>());
+    talk.warn_all(&rejected::lines(&timed.unreadable, talk.verbose));
     if timed.incomplete {
         let read = timed.arrivals.len() + timed.unreadable.len();
         talk.warn(&format!("stopped after {read} of {} captures; the result is of those", timed.captures));

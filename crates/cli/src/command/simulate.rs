@@ -16,8 +16,10 @@ use serde_json::json;
 use crate::arguments::{Place, SimulateArguments};
 use crate::console::Console;
 use crate::failure::Failure;
+use crate::output::without_temporary_name;
 use crate::progress::Progress;
 use crate::status;
+use crate::table::figures::count;
 
 /// The recording in the folder.
 const RECORDING: &str = "visit";
@@ -43,19 +45,17 @@ pub(crate) fn run(asked: &SimulateArguments, console: &mut Console<'_>) -> Resul
     }
     let names = capture_names(&staging.path().join(FILES[2]))?;
     let truth = truth(asked, &site, &visit, &names).to_json()?;
-    let truth_path = staging.path().join(FILES[1]);
-    fs::write(&truth_path, truth).map_err(|source| cannot_write(&truth_path, source))?;
+    fs::write(staging.path().join(FILES[1]), truth)
+        .map_err(|source| cannot_write(&asked.output.join(FILES[1]), source))?;
     move_into_place(staging, &asked.output).map_err(|source| cannot_write(&asked.output, source))?;
 
-    let folder = asked.output.display();
-    console
-        .talk
-        .say(&format!("{} captures written to {folder}, and what they really hold", visit.capture_count()));
+    let (folder, captures) = (asked.output.display(), count(visit.capture_count(), "capture"));
+    console.talk.say(&format!("{captures} written to {folder}, and the truth about them"));
     Ok(status::DONE)
 }
 
 fn cannot_write(path: &Path, source: std::io::Error) -> Failure {
-    Failure::Write { path: path.to_owned(), source }
+    Failure::Write { path: path.to_owned(), source: without_temporary_name(source) }
 }
 
 /// Whether the folder can take the files.

@@ -5,6 +5,8 @@ use arcstead::documents::{LocateDocument, SourceResult};
 use super::figures::count;
 use super::glyphs::Glyphs;
 use super::layout::{self, Side};
+use crate::console::on_one_line;
+use crate::rejected;
 
 /// Fit, covariances and members of a source.
 pub(super) fn of_source(source: &SourceResult, glyphs: Glyphs) -> String {
@@ -32,7 +34,7 @@ pub(super) fn of_source(source: &SourceResult, glyphs: Glyphs) -> String {
     if let (Some(first), Some(last)) = (source.first, source.last) {
         rows.push(("Taken".to_owned(), format!("{first} to {last}")));
     }
-    rows.push(("Captures".to_owned(), source.members.join(", ")));
+    rows.push(("Captures".to_owned(), on_one_line(&source.members.join(", "))));
     let mut text = layout::labelled(&rows);
 
     let header = ["Covariance m2", "xx", "yy", "zz", "xy", "xz", "yz"];
@@ -66,10 +68,7 @@ pub(super) fn of_document(document: &LocateDocument) -> String {
     let mut text = String::new();
     if !document.captures.rejected.is_empty() {
         text += "Rejected captures:\n";
-        let rejected = document.captures.rejected.iter();
-        text += &layout::bullets(
-            &rejected.map(|one| format!("{}: {}", one.capture, one.reason)).collect::<Vec<_>>(),
-        );
+        text += &layout::bullets(&rejected::lines(&document.captures.rejected, true));
         text += "\n";
     }
     let options: Vec<String> =

@@ -57,7 +57,7 @@ pub(super) fn signed(value: Option<f64>) -> String {
 }
 
 /// A number of things: `1 capture`, `2 captures`.
-pub(super) fn count(number: usize, one: &str) -> String {
+pub(crate) fn count(number: usize, one: &str) -> String {
     if number == 1 { format!("1 {one}") } else { format!("{number} {one}s") }
 }
 

@@ -5,6 +5,7 @@ use arcstead::documents::{InspectDocument, InspectedCapture, InspectedChannel};
 use super::figures::{count, decimals, middle};
 use super::glyphs::Glyphs;
 use super::layout::{self, Side};
+use crate::rejected;
 
 /// Carriers that are told for a channel.
 const MOST_CARRIERS: usize = 4;
@@ -38,10 +39,7 @@ pub(crate) fn text(document: &InspectDocument, glyphs: Glyphs, verbose: bool) ->
     }
     if !document.rejected.is_empty() {
         text += "\nNot read:\n";
-        let rejected = document.rejected.iter();
-        text += &layout::bullets(
-            &rejected.map(|one| format!("{}: {}", one.capture, one.reason)).collect::<Vec<_>>(),
-        );
+        text += &layout::bullets(&rejected::lines(&document.rejected, verbose));
     }
     text
 }

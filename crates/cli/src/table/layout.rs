@@ -4,7 +4,7 @@ use comfy_table::presets::NOTHING;
 use comfy_table::{Cell, CellAlignment, ColumnConstraint, ContentArrangement, LineStyle, Table, Width};
 
 use super::glyphs::Glyphs;
-use crate::console::without_controls;
+use crate::console::{on_one_line, without_controls};
 
 /// Width of everything that is printed.
 pub(super) const WIDTH: u16 = 80;
@@ -37,7 +37,7 @@ fn ended(table: &Table) -> String {
 
 /// Text on lines of its own, with emphasis.
 pub(super) fn headline(text: &str) -> String {
-    format!("\x1b[1m{}\x1b[0m\n", paragraph(text).trim_end())
+    format!("\x1b[1m{}\x1b[0m\n", paragraph(&on_one_line(text)).trim_end())
 }
 
 /// Text broken into lines.
@@ -74,7 +74,7 @@ pub(super) fn bullets(texts: &[String]) -> String {
     }
     let mut table = bare();
     for text in texts {
-        table.add_row([cell("-"), cell(text)]);
+        table.add_row([cell("-"), cell(&on_one_line(text))]);
     }
     for (column, padding) in table.column_iter_mut().zip([(2, 1), (0, 0)]) {
         column.set_padding(padding);
@@ -92,7 +92,7 @@ pub(super) fn columns(header: &[(&str, Side)], rows: &[Vec<String>], glyphs: Gly
     table.load_style(NOTHING.header_separator(rule));
     table.set_header(header.iter().map(|(name, _)| cell(name)));
     for row in rows {
-        table.add_row(row.iter().map(|text| cell(text)));
+        table.add_row(row.iter().map(|text| cell(&on_one_line(text))));
     }
     pad(&mut table);
     for (column, (_, side)) in table.column_iter_mut().zip(header) {

@@ -16,7 +16,7 @@
 pub(crate) mod arrivals;
 mod detail;
 mod each;
-mod figures;
+pub(crate) mod figures;
 mod glyphs;
 pub(crate) mod inspect;
 mod layout;

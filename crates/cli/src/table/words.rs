@@ -5,6 +5,8 @@ use std::collections::HashMap;
 use arcstead::documents::{CaptureCounts, Flag};
 
 use super::figures::count;
+use crate::console::on_one_line;
+use crate::rejected;
 
 /// Most reasons that are told apart without `--verbose`.
 const MOST_REASONS: usize = 3;
@@ -49,12 +51,13 @@ pub(super) fn not_used(counts: &CaptureCounts) -> Option<String> {
 /// The captures that gave nothing, a line for each reason, the most frequent first.
 pub(super) fn rejected(counts: &CaptureCounts) -> String {
     let mut found: HashMap<&str, usize> = HashMap::new();
-    for rejected in &counts.rejected {
-        *found.entry(rejected.reason.as_str()).or_default() += 1;
+    for one in &counts.rejected {
+        *found.entry(rejected::reason(one)).or_default() += 1;
     }
     let mut found: Vec<_> = found.into_iter().collect();
     found.sort_by(|(a, a_count), (b, b_count)| b_count.cmp(a_count).then(a.cmp(b)));
-    let told = found.iter().take(MOST_REASONS).map(|(reason, count)| format!("{count} x {reason}"));
+    let told =
+        found.iter().take(MOST_REASONS).map(|(reason, count)| format!("{count} x {}", on_one_line(reason)));
     let mut lines =
         vec![format!("{} without enough pulses, or not readable:", count(counts.rejected.len(), "capture"))];
     lines.extend(told);

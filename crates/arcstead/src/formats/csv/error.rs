@@ -137,7 +137,8 @@ pub enum CsvError {
     /// The digits of the time column do not tell the interval.
     #[error(
         "the time column has too few digits to tell the sample interval ({interval_s:e} s, uncertain by \
-         {uncertainty_s:e} s); export it with more digits, or put `sample_rate_gsps` under [recorder] in the site file"
+         {uncertainty_s:e} s); export it with more digits, or put `sample_rate_gsps` under [recorder] in the site \
+         file, or give `inspect` a --sample-rate"
     )]
     TooFewDigits {
         /// The interval, in seconds.

@@ -167,7 +167,7 @@ fn rates_that_disagree_name_both() {
     let text = "Time,CH1,CH2\n-2e-10,0.5,2\n0,-0.25,4\n2e-10,1,-8\n4e-10,0,1.5\n";
     assert_reads("agreed", read_bytes(text.as_bytes(), Some(5.001e9)), 5e9);
     let error = read_bytes(text.as_bytes(), Some(2.5e9)).unwrap_err();
-    assert!(error.contains("shot.csv was sampled at 5") && error.contains("says 2500000000 Hz"), "{error}");
+    assert!(error.contains("shot.csv was sampled at 5") && error.contains("says 2.5 GS/s"), "{error}");
     let error = read(&text.replace("e-10", "e-310")).unwrap_err();
     assert!(error.contains("sample rate of"), "{error}");
 }
