@@ -56,7 +56,7 @@ impl ArrivalOptions {
 pub enum TimerError {
     /// The capture has no such channel.
     #[error(
-        "the capture has {found} channels, but antenna \"{antenna}\" is on channel {channel}; check `channel` in the site file"
+        "antenna \"{antenna}\" is on channel {channel}, but the channels of the capture end at {found}; check `channel` in the site file"
     )]
     MissingChannel {
         /// Name of the antenna.

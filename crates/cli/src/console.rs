@@ -9,7 +9,7 @@ use anstream::{AutoStream, ColorChoice};
 
 use crate::arguments::{Color, TalkArguments};
 use crate::failure::Failure;
-use crate::table::Glyphs;
+use crate::table::Screen;
 
 /// Most warnings of one kind that are told without `--verbose`.
 const MOST_WARNINGS: usize = 10;
@@ -21,7 +21,7 @@ pub(crate) struct Console<'w> {
     pub(crate) emphasis: bool,
     /// Whether a file that is written gets emphasis too: only when it was asked for.
     pub(crate) emphasis_in_files: bool,
-    pub(crate) glyphs: Glyphs,
+    pub(crate) screen: Screen,
     pub(crate) talk: Talk<'w>,
 }
 
@@ -47,7 +47,7 @@ impl<'w> Console<'w> {
                 Color::Never => false,
             },
             emphasis_in_files: asked.color == Color::Always,
-            glyphs: Glyphs::of_locale(),
+            screen: Screen::of_locale().of_columns(columns_of(stdout)),
             talk: Talk {
                 terminal: stderr.is_terminal(),
                 stderr: Mutex::new(stderr),
@@ -57,6 +57,13 @@ impl<'w> Console<'w> {
             stdout,
         }
     }
+}
+
+/// Columns of the terminal that a stream goes to; none where it goes to no terminal.
+fn columns_of<S: RawStream>(stream: &S) -> Option<u16> {
+    let (terminal_size::Width(columns), _) =
+        stream.is_terminal().then(terminal_size::terminal_size).flatten()?;
+    Some(columns)
 }
 
 fn shows_emphasis<S: RawStream>(stream: &mut S) -> bool {

@@ -5,6 +5,7 @@ use std::path::{Path, PathBuf};
 
 use crate::console::Console;
 use crate::failure::Failure;
+use crate::table::Screen;
 
 /// Where the result goes.
 #[derive(Debug)]
@@ -52,6 +53,11 @@ impl Output {
             return Err(Failure::OutputIsInput { path: path.clone() });
         }
         Ok(())
+    }
+
+    /// What the result is shown on.
+    pub(crate) fn screen(&self, console: &Console<'_>) -> Screen {
+        if self.file.is_some() { console.screen.of_file() } else { console.screen }
     }
 
     /// Writes the whole result. Emphasis in `text` is taken out where it would not show.

@@ -268,6 +268,46 @@ fn a_damaged_capture_costs_itself_and_only_damaged_ones_the_run() {
 }
 
 #[test]
+fn captures_that_fail_alike_are_told_in_one_line() {
+    let yard = Yard::new();
+    let visit = yard.simulated("visit");
+    let band = ["--band", "3000,4000"];
+    for command in
+        [&["locate", &yard.site, &visit][..], &["arrivals", &yard.site, &visit], &["inspect", &visit]]
+    {
+        let ended = arcstead(&[command, &band].concat());
+        assert_eq!(ended.status, status::FAILED, "{}", ended.stderr);
+        let lines: Vec<&str> = ended.stderr.lines().collect();
+        assert_eq!(lines.len(), 2, "{}", ended.stderr);
+        assert!(lines[1].starts_with("  6 captures (visit.sigmf-meta#1 ...): "), "{}", ended.stderr);
+    }
+
+    for name in ["a.csv", "b.csv", "c.csv"] {
+        fs::write(Path::new(&visit).join(name), "0.5,2\n-0.25,4\n1,-8\n0,1.5\n").unwrap();
+    }
+    let one = arcstead(&["inspect", &yard.name("visit/a.csv")]);
+    assert_eq!(one.stderr.matches("a.csv").count(), 1, "{}", one.stderr);
+    assert!(one.stderr.contains("give `inspect` a --sample-rate"), "{}", one.stderr);
+    let grouped = arcstead(&["inspect", &visit]);
+    let warnings = grouped.stderr.lines().filter(|line| line.starts_with("warning: ")).collect::<Vec<_>>();
+    assert_eq!(warnings.len(), 1, "{}", grouped.stderr);
+    assert!(warnings[0].starts_with("warning: 3 captures ("), "{}", grouped.stderr);
+    assert!(warnings[0].contains("a.csv ...): gives no sample rate"), "{}", grouped.stderr);
+    let each = arcstead(&["inspect", &visit, "-v"]);
+    assert_eq!(each.stderr.matches("warning: ").count(), 3, "{}", each.stderr);
+}
+
+#[test]
+fn an_output_that_cannot_be_made_is_named_as_it_was_given() {
+    let yard = Yard::new();
+    let folder = yard.name("not/there");
+    let ended = arcstead(&["simulate", &yard.site, "--source", "4,7,4", "--output", &folder]);
+    assert_eq!(ended.status, status::FAILED, "{}", ended.stderr);
+    assert!(ended.stderr.contains(&folder) && !ended.stderr.contains(".arcstead-"), "{}", ended.stderr);
+    assert_eq!(entries(yard.folder.path()), ["site.toml"]);
+}
+
+#[test]
 fn wrong_usage_ends_with_its_own_status() {
     let yard = Yard::new();
     let visit = yard.simulated("visit");

@@ -27,7 +27,7 @@ pub(crate) fn run(asked: &ArrivalsArguments, console: &mut Console<'_>) -> Resul
         &output,
     )?;
     let text = match asked.output.format() {
-        Format::Table => table::arrivals::text(&site, &timed, console.glyphs, console.talk.verbose),
+        Format::Table => table::arrivals::text(&site, &timed, output.screen(console), console.talk.verbose),
         Format::Json => written(
             &timed,
             ArrivalsWriter::json(Vec::new(), "arrivals", &site, &arrivals_head(&site, &timed))?,

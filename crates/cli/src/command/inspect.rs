@@ -29,7 +29,7 @@ pub(crate) fn run(asked: &InspectArguments, console: &mut Console<'_>) -> Result
     }
     console.talk.warn_all(&rejected::lines(&document.rejected, console.talk.verbose));
     let text = match asked.output.format() {
-        Format::Table => table::inspect::text(&document, console.glyphs, console.talk.verbose),
+        Format::Table => table::inspect::text(&document, output.screen(console), console.talk.verbose),
         Format::Json => document.to_json()?,
         Format::Csv => sheet::inspect::text(&document)?,
     };

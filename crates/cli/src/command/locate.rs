@@ -34,7 +34,7 @@ pub(crate) fn run(asked: &LocateArguments, console: &mut Console<'_>) -> Result<
     progress.end();
     let document = document?;
     let text = match asked.output.format() {
-        Format::Table => table::locate::text(&document, console.glyphs, console.talk.verbose),
+        Format::Table => table::locate::text(&document, output.screen(console), console.talk.verbose),
         Format::Json => document.to_json()?,
         Format::Csv => sheet::locate::text(&document)?,
     };

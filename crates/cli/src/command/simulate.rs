@@ -136,7 +136,10 @@ fn staging_folder(folder: &Path) -> std::io::Result<tempfile::TempDir> {
     #[cfg(unix)]
     // Less the process's mask; by default only the owner could read a temporary folder.
     builder.permissions(everybody);
-    builder.tempdir_in(if folder.is_dir() { folder } else { beside })
+    let place = if folder.is_dir() { folder } else { beside };
+    // Asked first, because the system's own words tell more than those of the temporary folder.
+    fs::metadata(place)?;
+    builder.tempdir_in(place)
 }
 
 /// Writes the captures; false when Ctrl-C came before the last.

@@ -5,16 +5,16 @@ use arcstead::arrivals_table::AntennaArrival;
 use arcstead::site::Site;
 
 use super::figures::{count, decimals, middle};
-use super::glyphs::Glyphs;
 use super::layout::{self, Side};
+use super::screen::Screen;
 
 /// The text of a timed visit.
-pub(crate) fn text(site: &Site, timed: &TimedVisit, glyphs: Glyphs, verbose: bool) -> String {
+pub(crate) fn text(site: &Site, timed: &TimedVisit, screen: Screen, verbose: bool) -> String {
     let with_pulse = timed.arrivals.iter().filter(|capture| capture.received() > 0).count();
     let all = count(timed.captures, "capture");
-    let mut text = layout::headline(&format!("{}: a pulse in {with_pulse} of {all}", site.name));
+    let mut text = layout::headline(&format!("{}: a pulse in {with_pulse} of {all}", site.name), screen);
     if timed.incomplete {
-        text += &layout::paragraph("INCOMPLETE: stopped before the last capture.");
+        text += &layout::paragraph("INCOMPLETE: stopped before the last capture.", screen);
     }
     text += "\n";
     let header = [
@@ -27,15 +27,16 @@ pub(crate) fn text(site: &Site, timed: &TimedVisit, glyphs: Glyphs, verbose: boo
     ];
     let rows: Vec<Vec<String>> =
         (0..site.geometry.antennas.len()).map(|antenna| summary(site, timed, antenna)).collect();
-    text += &layout::columns(&header, &rows, glyphs);
+    text += &layout::columns(&header, &rows, screen);
     text += "\n";
     text += &layout::paragraph(
         "SNR and sigma are the middle ones of all captures; sigma is the random part of the arrival's error. --format csv \
          gives the times themselves.",
+        screen,
     );
     if verbose {
         text += "\n";
-        text += &every_arrival(site, timed, glyphs);
+        text += &every_arrival(site, timed, screen);
     }
     text
 }
@@ -65,7 +66,7 @@ fn summary(site: &Site, timed: &TimedVisit, antenna: usize) -> Vec<String> {
     ]
 }
 
-fn every_arrival(site: &Site, timed: &TimedVisit, glyphs: Glyphs) -> String {
+fn every_arrival(site: &Site, timed: &TimedVisit, screen: Screen) -> String {
     let header = [
         ("Capture", Side::Whole),
         ("Antenna", Side::Left),
@@ -87,5 +88,5 @@ fn every_arrival(site: &Site, timed: &TimedVisit, glyphs: Glyphs) -> String {
             ]);
         }
     }
-    layout::columns(&header, &rows, glyphs)
+    layout::columns(&header, &rows, screen)
 }

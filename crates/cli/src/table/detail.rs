@@ -3,13 +3,13 @@
 use arcstead::documents::{LocateDocument, SourceResult};
 
 use super::figures::count;
-use super::glyphs::Glyphs;
 use super::layout::{self, Side};
+use super::screen::Screen;
 use crate::console::on_one_line;
 use crate::rejected;
 
 /// Fit, covariances and members of a source.
-pub(super) fn of_source(source: &SourceResult, glyphs: Glyphs) -> String {
+pub(super) fn of_source(source: &SourceResult, screen: Screen) -> String {
     let fit = &source.fit;
     let freedom = count(fit.degrees_of_freedom, "degree");
     let told = match fit.p_value {
@@ -35,7 +35,7 @@ pub(super) fn of_source(source: &SourceResult, glyphs: Glyphs) -> String {
         rows.push(("Taken".to_owned(), format!("{first} to {last}")));
     }
     rows.push(("Captures".to_owned(), on_one_line(&source.members.join(", "))));
-    let mut text = layout::labelled(&rows);
+    let mut text = layout::labelled(&rows, screen);
 
     let header = ["Covariance m2", "xx", "yy", "zz", "xy", "xz", "yz"];
     let header: Vec<(&str, Side)> = header
@@ -58,22 +58,22 @@ pub(super) fn of_source(source: &SourceResult, glyphs: Glyphs) -> String {
         .collect();
     if !rows.is_empty() {
         text += "\n";
-        text += &layout::columns(&header, &rows, glyphs);
+        text += &layout::columns(&header, &rows, screen);
     }
     text
 }
 
 /// Rejected captures and options of the run.
-pub(super) fn of_document(document: &LocateDocument) -> String {
+pub(super) fn of_document(document: &LocateDocument, screen: Screen) -> String {
     let mut text = String::new();
     if !document.captures.rejected.is_empty() {
         text += "Rejected captures:\n";
-        text += &layout::bullets(&rejected::lines(&document.captures.rejected, true));
+        text += &layout::bullets(&rejected::lines(&document.captures.rejected, true), screen);
         text += "\n";
     }
     let options: Vec<String> =
         document.head.options.iter().map(|(name, value)| format!("{name} = {value}")).collect();
-    text += &layout::labelled(&[("Options".to_owned(), options.join(", "))]);
+    text += &layout::labelled(&[("Options".to_owned(), options.join(", "))], screen);
     text += "\n";
     text
 }

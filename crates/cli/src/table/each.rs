@@ -3,8 +3,8 @@
 use arcstead::documents::{Flag, LocateDocument, SourceResult, Statement};
 
 use super::figures::{count, metres, percent};
-use super::glyphs::Glyphs;
 use super::layout::{self, Side};
+use super::screen::Screen;
 use super::words::{either, not_used};
 
 /// What one capture by itself states, in words.
@@ -19,16 +19,16 @@ fn statement(source: &SourceResult) -> String {
 }
 
 /// The text of captures solved one by one.
-pub(super) fn text(document: &LocateDocument, sources: &[SourceResult], glyphs: Glyphs) -> String {
+pub(super) fn text(document: &LocateDocument, sources: &[SourceResult], screen: Screen) -> String {
     let told = format!(
         "{} solved one by one: {} of {}",
         document.head.site.as_deref().unwrap_or("This site"),
         sources.len(),
         count(document.head.inputs.count, "capture")
     );
-    let mut text = layout::headline(&format!("{told} gave a position"));
+    let mut text = layout::headline(&format!("{told} gave a position"), screen);
     if document.incomplete {
-        text += &layout::paragraph("INCOMPLETE: stopped before the last capture.");
+        text += &layout::paragraph("INCOMPLETE: stopped before the last capture.", screen);
     }
     text += "\n";
     let mut tally: Vec<(String, usize)> = Vec::new();
@@ -45,7 +45,7 @@ pub(super) fn text(document: &LocateDocument, sources: &[SourceResult], glyphs: 
     let rows: Vec<Vec<String>> = rows
         .map(|(index, (said, number))| vec![(index + 1).to_string(), said.clone(), number.to_string()])
         .collect();
-    text += &layout::columns(&header, &rows, glyphs);
+    text += &layout::columns(&header, &rows, screen);
     text += "\n";
     let header = [
         ("Capture", Side::Whole),
@@ -60,10 +60,10 @@ pub(super) fn text(document: &LocateDocument, sources: &[SourceResult], glyphs: 
         let said = statement(source);
         row(source, tally.iter().position(|(known, _)| *known == said).map_or(0, |index| index + 1))
     });
-    text += &layout::columns(&header, &rows.collect::<Vec<_>>(), glyphs);
+    text += &layout::columns(&header, &rows.collect::<Vec<_>>(), screen);
     text += "\n";
     let unused = not_used(&document.captures).map(|text| ("Not used".to_owned(), text));
-    text += &layout::labelled(&Vec::from_iter(unused));
+    text += &layout::labelled(&Vec::from_iter(unused), screen);
     text += "\n";
     text
 }

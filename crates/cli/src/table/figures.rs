@@ -1,6 +1,6 @@
 //! Numbers as they are printed.
 
-use super::glyphs::Glyphs;
+use super::screen::Screen;
 
 /// A probability as whole percent. Neither certainty nor impossibility is ever printed: those are not to be had.
 pub(super) fn percent(probability: f64) -> String {
@@ -37,8 +37,8 @@ pub(super) fn point(position_m: [f64; 3]) -> String {
 }
 
 /// An angle, with its standard deviation where there is one.
-pub(super) fn angle(angle_deg: f64, sigma_deg: Option<f64>, glyphs: Glyphs) -> String {
-    let Glyphs { degree, plus_minus, .. } = glyphs;
+pub(super) fn angle(angle_deg: f64, sigma_deg: Option<f64>, screen: Screen) -> String {
+    let Screen { degree, plus_minus, .. } = screen;
     match sigma_deg {
         Some(sigma_deg) => format!("{angle_deg:.1} {plus_minus} {sigma_deg:.1}{degree}"),
         None => format!("{angle_deg:.1}{degree}"),

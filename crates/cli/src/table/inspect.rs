@@ -3,15 +3,15 @@
 use arcstead::documents::{InspectDocument, InspectedCapture, InspectedChannel};
 
 use super::figures::{count, decimals, middle};
-use super::glyphs::Glyphs;
 use super::layout::{self, Side};
+use super::screen::Screen;
 use crate::rejected;
 
 /// Carriers that are told for a channel.
 const MOST_CARRIERS: usize = 4;
 
 /// The text of an inspection: a part for each shape of capture that was found.
-pub(crate) fn text(document: &InspectDocument, glyphs: Glyphs, verbose: bool) -> String {
+pub(crate) fn text(document: &InspectDocument, screen: Screen, verbose: bool) -> String {
     let files = count(document.head.inputs.files.len(), "file");
     let all = document.head.inputs.count;
     let read = document.captures.len();
@@ -19,27 +19,28 @@ pub(crate) fn text(document: &InspectDocument, glyphs: Glyphs, verbose: bool) ->
         true => count(read, "capture"),
         false => format!("{read} of {} read,", count(all, "capture")),
     };
-    let mut text = layout::headline(&format!("{told} in {files}"));
+    let mut text = layout::headline(&format!("{told} in {files}"), screen);
     if document.incomplete {
-        text += &layout::paragraph("INCOMPLETE: stopped before the last capture.");
+        text += &layout::paragraph("INCOMPLETE: stopped before the last capture.", screen);
     }
     for alike in by_shape(&document.captures) {
         text += "\n";
-        text += &part(&alike, glyphs);
+        text += &part(&alike, screen);
     }
     text += "\n";
     text += &layout::paragraph(
         "Pulses, clipped, dead: number of captures. SNR and noise (rms) are the middle ones of all captures; noise alone \
          reaches some 10 dB. Carriers that are not in every capture have the number of captures beside them. Levels are in \
          the unit of the samples, which is not calibrated.",
+        screen,
     );
     if verbose {
         text += "\n";
-        text += &every_capture(document, glyphs);
+        text += &every_capture(document, screen);
     }
     if !document.rejected.is_empty() {
         text += "\nNot read:\n";
-        text += &layout::bullets(&rejected::lines(&document.rejected, verbose));
+        text += &layout::bullets(&rejected::lines(&document.rejected, verbose), screen);
     }
     text
 }
@@ -57,19 +58,22 @@ fn by_shape(captures: &[InspectedCapture]) -> Vec<Vec<&InspectedCapture>> {
     groups
 }
 
-fn part(alike: &[&InspectedCapture], glyphs: Glyphs) -> String {
+fn part(alike: &[&InspectedCapture], screen: Screen) -> String {
     let shape = alike[0];
     let length_ns = shape.samples as f64 / shape.sample_rate_hz * 1e9;
-    let mut text = layout::paragraph(&format!(
-        "{}, each of {} and {} samples at {} GS/s ({length_ns:.1} ns).",
-        count(alike.len(), "capture"),
-        count(shape.channels.len(), "channel"),
-        shape.samples,
-        shape.sample_rate_hz / 1e9,
-    ));
+    let mut text = layout::paragraph(
+        &format!(
+            "{}, each of {} and {} samples at {} GS/s ({length_ns:.1} ns).",
+            count(alike.len(), "capture"),
+            count(shape.channels.len(), "channel"),
+            shape.samples,
+            shape.sample_rate_hz / 1e9,
+        ),
+        screen,
+    );
     let times = alike.iter().filter_map(|capture| capture.time);
     if let (Some(first), Some(last)) = (times.clone().min(), times.max()) {
-        text += &layout::paragraph(&format!("Taken {first} to {last}."));
+        text += &layout::paragraph(&format!("Taken {first} to {last}."), screen);
     }
     text += "\n";
     let header = [
@@ -90,7 +94,7 @@ fn part(alike: &[&InspectedCapture], glyphs: Glyphs) -> String {
             summary(&channels, line_width_mhz)
         })
         .collect();
-    text += &layout::columns(&header, &rows, glyphs);
+    text += &layout::columns(&header, &rows, screen);
     text
 }
 
@@ -154,7 +158,7 @@ fn carriers(channels: &[&InspectedChannel], line_width_mhz: f64) -> String {
     told.join(", ")
 }
 
-fn every_capture(document: &InspectDocument, glyphs: Glyphs) -> String {
+fn every_capture(document: &InspectDocument, screen: Screen) -> String {
     let header = [
         ("Capture", Side::Whole),
         ("Channel", Side::Right),
@@ -184,5 +188,5 @@ fn every_capture(document: &InspectDocument, glyphs: Glyphs) -> String {
             ]);
         }
     }
-    layout::columns(&header, &rows, glyphs)
+    layout::columns(&header, &rows, screen)
 }

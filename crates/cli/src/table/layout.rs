@@ -1,15 +1,17 @@
-//! Columns and wrapped text, 80 columns wide.
+//! Columns and wrapped text, as wide as the screen.
 
 use comfy_table::presets::NOTHING;
 use comfy_table::{Cell, CellAlignment, ColumnConstraint, ContentArrangement, LineStyle, Table, Width};
 
-use super::glyphs::Glyphs;
+use super::screen::Screen;
 use crate::console::{on_one_line, without_controls};
 
-/// Width of everything that is printed.
-pub(super) const WIDTH: u16 = 80;
 /// Width of the labels before their texts.
 const LABEL_WIDTH: u16 = 18;
+
+/// Longest word of a text in a column that stays whole on a narrow terminal: words in pieces are worse than a table that
+/// is too wide.
+const WHOLE_WORD: usize = 12;
 
 /// How a column stands. Only texts on the left are broken into lines where the table gets too wide.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
@@ -21,9 +23,9 @@ pub(super) enum Side {
     Whole,
 }
 
-fn bare() -> Table {
+fn bare(screen: Screen) -> Table {
     let mut table = Table::new();
-    table.load_style(NOTHING).set_content_arrangement(ContentArrangement::Dynamic).set_width(WIDTH);
+    table.load_style(NOTHING).set_content_arrangement(ContentArrangement::Dynamic).set_width(screen.width);
     table
 }
 
@@ -36,13 +38,13 @@ fn ended(table: &Table) -> String {
 }
 
 /// Text on lines of its own, with emphasis.
-pub(super) fn headline(text: &str) -> String {
-    format!("\x1b[1m{}\x1b[0m\n", paragraph(&on_one_line(text)).trim_end())
+pub(super) fn headline(text: &str, screen: Screen) -> String {
+    format!("\x1b[1m{}\x1b[0m\n", paragraph(&on_one_line(text), screen).trim_end())
 }
 
 /// Text broken into lines.
-pub(super) fn paragraph(text: &str) -> String {
-    let mut table = bare();
+pub(super) fn paragraph(text: &str, screen: Screen) -> String {
+    let mut table = bare(screen);
     table.add_row([cell(text)]);
     for column in table.column_iter_mut() {
         column.set_padding((0, 0));
@@ -51,11 +53,11 @@ pub(super) fn paragraph(text: &str) -> String {
 }
 
 /// A label before each text, indented; nothing of nothing.
-pub(super) fn labelled(rows: &[(String, String)]) -> String {
+pub(super) fn labelled(rows: &[(String, String)], screen: Screen) -> String {
     if rows.is_empty() {
         return String::new();
     }
-    let mut table = bare();
+    let mut table = bare(screen);
     for (label, text) in rows {
         table.add_row([cell(label), cell(text)]);
     }
@@ -68,11 +70,11 @@ pub(super) fn labelled(rows: &[(String, String)]) -> String {
 }
 
 /// A list, a dash before each text.
-pub(super) fn bullets(texts: &[String]) -> String {
+pub(super) fn bullets(texts: &[String], screen: Screen) -> String {
     if texts.is_empty() {
         return String::new();
     }
-    let mut table = bare();
+    let mut table = bare(screen);
     for text in texts {
         table.add_row([cell("-"), cell(&on_one_line(text))]);
     }
@@ -83,27 +85,34 @@ pub(super) fn bullets(texts: &[String]) -> String {
 }
 
 /// A table with a header; nothing of nothing.
-pub(super) fn columns(header: &[(&str, Side)], rows: &[Vec<String>], glyphs: Glyphs) -> String {
+pub(super) fn columns(header: &[(&str, Side)], rows: &[Vec<String>], screen: Screen) -> String {
     if rows.is_empty() {
         return String::new();
     }
-    let mut table = bare();
-    let rule = LineStyle::new(glyphs.rule, glyphs.rule, glyphs.rule, glyphs.rule);
+    let mut table = bare(screen);
+    let rule = LineStyle::new(screen.rule, screen.rule, screen.rule, screen.rule);
     table.load_style(NOTHING.header_separator(rule));
     table.set_header(header.iter().map(|(name, _)| cell(name)));
     for row in rows {
         table.add_row(row.iter().map(|text| cell(&on_one_line(text))));
     }
     pad(&mut table);
-    for (column, (_, side)) in table.column_iter_mut().zip(header) {
+    for (index, (column, (name, side))) in table.column_iter_mut().zip(header).enumerate() {
         match side {
             Side::Left => column.set_cell_alignment(CellAlignment::Left),
             Side::Right => column.set_cell_alignment(CellAlignment::Right),
             Side::Whole => {}
         }
-        if *side != Side::Left {
-            column.set_constraint(ColumnConstraint::ContentWidth);
-        }
+        column.set_constraint(match side {
+            Side::Left => {
+                let texts = rows.iter().filter_map(|row| row.get(index)).map(String::as_str).chain([*name]);
+                let words = texts.flat_map(str::split_whitespace).map(|word| word.chars().count());
+                let word = words.max().unwrap_or(0).min(WHOLE_WORD) as u16;
+                let padding = if index == 0 { 4 } else { 2 };
+                ColumnConstraint::LowerBoundary(Width::Fixed(word + padding))
+            }
+            _ => ColumnConstraint::ContentWidth,
+        });
     }
     ended(&table)
 }

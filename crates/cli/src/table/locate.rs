@@ -4,30 +4,30 @@
 use arcstead::documents::{Flag, LocateDocument, SourceResult};
 
 use super::figures::{count, decimals, signed};
-use super::glyphs::Glyphs;
 use super::layout::{self, Side};
+use super::screen::Screen;
 use super::{detail, each, place, verdict, words};
 
 /// The text of a result.
-pub(crate) fn text(document: &LocateDocument, glyphs: Glyphs, verbose: bool) -> String {
+pub(crate) fn text(document: &LocateDocument, screen: Screen, verbose: bool) -> String {
     let mut text = String::new();
     let solved_by_itself = document.head.options.get("each").is_some_and(|each| each == true);
     match document.sources.as_slice() {
-        [] => text += &no_source(document),
-        sources if solved_by_itself => text += &each::text(document, sources, glyphs),
+        [] => text += &no_source(document, screen),
+        sources if solved_by_itself => text += &each::text(document, sources, screen),
         sources => {
             for (index, source) in sources.iter().enumerate() {
-                text += &one_source(document, index, source, glyphs, verbose);
+                text += &one_source(document, index, source, screen, verbose);
                 text += "\n";
             }
         }
     }
     if verbose {
-        text += &detail::of_document(document);
+        text += &detail::of_document(document, screen);
     }
     if !document.cautions.is_empty() {
         text += "Before acting on this:\n";
-        text += &layout::bullets(&document.cautions);
+        text += &layout::bullets(&document.cautions, screen);
     }
     text
 }
@@ -47,12 +47,13 @@ fn captures_told(document: &LocateDocument) -> usize {
     if document.incomplete { document.captures.read } else { document.head.inputs.count }
 }
 
-fn no_source(document: &LocateDocument) -> String {
-    let mut text = layout::headline("No source found");
+fn no_source(document: &LocateDocument, screen: Screen) -> String {
+    let mut text = layout::headline("No source found", screen);
     let counts = &document.captures;
     let read = count(captures_told(document), "capture");
-    text += &layout::paragraph(&format!("{}: {read}, none of them tells a place.", site_of(document)));
-    text += &stopped(document).map_or_else(String::new, |stopped| layout::paragraph(&stopped));
+    text +=
+        &layout::paragraph(&format!("{}: {read}, none of them tells a place.", site_of(document)), screen);
+    text += &stopped(document).map_or_else(String::new, |stopped| layout::paragraph(&stopped, screen));
     text += "\n";
     let mut rows = Vec::new();
     if counts.stray > 0 {
@@ -64,7 +65,7 @@ fn no_source(document: &LocateDocument) -> String {
     if !counts.rejected.is_empty() {
         rows.push(("Rejected".to_owned(), words::rejected(counts)));
     }
-    text += &layout::labelled(&rows);
+    text += &layout::labelled(&rows, screen);
     text += "\n";
     text
 }
@@ -73,17 +74,17 @@ fn one_source(
     document: &LocateDocument,
     index: usize,
     source: &SourceResult,
-    glyphs: Glyphs,
+    screen: Screen,
     verbose: bool,
 ) -> String {
-    let mut text = layout::headline(&verdict::headline(source));
-    text += &verdict::unchecked(source).map_or_else(String::new, |text| layout::paragraph(&text));
-    text += &layout::paragraph(&captures_of(document, index, source));
-    text += &stopped(document).map_or_else(String::new, |stopped| layout::paragraph(&stopped));
+    let mut text = layout::headline(&verdict::headline(source), screen);
+    text += &verdict::unchecked(source).map_or_else(String::new, |text| layout::paragraph(&text, screen));
+    text += &layout::paragraph(&captures_of(document, index, source), screen);
+    text += &stopped(document).map_or_else(String::new, |stopped| layout::paragraph(&stopped, screen));
     text += "\n";
 
     let mut rows = Vec::from_iter(verdict::other_candidates(source));
-    rows.extend(place::rows(source, glyphs));
+    rows.extend(place::rows(source, screen));
     if !source.flags.is_empty() {
         let flags: Vec<&str> = source.flags.iter().map(|&flag| words::flag_words(flag)).collect();
         rows.push(("Weak points".to_owned(), flags.join("; ")));
@@ -91,7 +92,7 @@ fn one_source(
     if index == 0 {
         rows.extend(words::not_used(&document.captures).map(|text| ("Not used".to_owned(), text)));
     }
-    text += &layout::labelled(&rows);
+    text += &layout::labelled(&rows, screen);
 
     text += "\n";
     let unreliable = source.flags.contains(&Flag::PoorFit) || source.flags.contains(&Flag::Hidden);
@@ -99,13 +100,13 @@ fn one_source(
     text += &layout::columns(
         &[(asset, Side::Left), ("Probability", Side::Right)],
         &verdict::ranking(source),
-        glyphs,
+        screen,
     );
     text += "\n";
-    text += &antennas(source, glyphs);
+    text += &antennas(source, screen);
     if verbose {
         text += "\n";
-        text += &detail::of_source(source, glyphs);
+        text += &detail::of_source(source, screen);
     }
     text
 }
@@ -122,7 +123,7 @@ fn captures_of(document: &LocateDocument, index: usize, source: &SourceResult) -
     }
 }
 
-fn antennas(source: &SourceResult, glyphs: Glyphs) -> String {
+fn antennas(source: &SourceResult, screen: Screen) -> String {
     let header = [
         ("Antenna", Side::Left),
         ("SNR dB", Side::Right),
@@ -152,5 +153,5 @@ fn antennas(source: &SourceResult, glyphs: Glyphs) -> String {
             ]
         })
         .collect();
-    layout::columns(&header, &rows, glyphs)
+    layout::columns(&header, &rows, screen)
 }

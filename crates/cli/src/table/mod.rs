@@ -1,4 +1,4 @@
-//! Results as a person reads them, 80 columns wide.
+//! Results as a person reads them, 80 columns wide or as narrow as the terminal.
 //!
 //! | file | holds |
 //! |---|---|
@@ -10,22 +10,22 @@
 //! | `arrivals`, `inspect` | the tables of those commands |
 //! | `words` | flags and counts in plain words |
 //! | `figures` | numbers as they are printed |
-//! | `glyphs` | signs that not every terminal has |
+//! | `screen` | width of the terminal, and signs that not every one has |
 //! | `layout` | columns and wrapped text |
 
 pub(crate) mod arrivals;
 mod detail;
 mod each;
 pub(crate) mod figures;
-mod glyphs;
 pub(crate) mod inspect;
 mod layout;
 pub(crate) mod locate;
 mod place;
+mod screen;
 mod verdict;
 pub(crate) mod words;
 
-pub(crate) use glyphs::Glyphs;
+pub(crate) use screen::Screen;
 
 #[cfg(test)]
 mod tests;

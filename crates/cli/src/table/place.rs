@@ -3,7 +3,7 @@
 use arcstead::documents::{Alternative, Bearing, Flag, SourceResult};
 
 use super::figures::{angle, level, metres, percent, point};
-use super::glyphs::Glyphs;
+use super::screen::Screen;
 
 /// Other places that are told.
 const MOST_PLACES: usize = 3;
@@ -11,23 +11,23 @@ const MOST_PLACES: usize = 3;
 const WORTH_TELLING: f64 = 0.01;
 
 /// The rows about the place. Where the range is not determined a bearing and a range interval stand in place of a point.
-pub(super) fn rows(source: &SourceResult, glyphs: Glyphs) -> Vec<(String, String)> {
+pub(super) fn rows(source: &SourceResult, screen: Screen) -> Vec<(String, String)> {
     let mut rows = Vec::new();
     let mut add = |label: &str, text: String| rows.push((label.to_owned(), text));
     let (bearing, region) = (&source.bearing, &source.region);
     if source.flags.contains(&Flag::RangeUndetermined) {
-        add("Direction", format!("{}, seen from {}", direction(bearing, glyphs), point(bearing.from_m)));
+        add("Direction", format!("{}, seen from {}", direction(bearing, screen), point(bearing.from_m)));
         add("Distance", distance(bearing, region.confidence));
     } else {
         add("Position", format!("{} (east, north, up)", point(source.position_m)));
         if let Some(ellipse) = source.ellipse {
-            let axis = angle(ellipse.azimuth_deg, None, glyphs);
+            let axis = angle(ellipse.azimuth_deg, None, screen);
             let (major, minor) = (metres(ellipse.semi_major_m), metres(ellipse.semi_minor_m));
             let text = format!("{major} by {minor} m, half axes; the longer one {axis} from north");
             add(&format!("{} ellipse", level(ellipse.confidence)), text);
         }
-        add("Height", height(source, glyphs));
-        add("Bearing", format!("{}, from the middle of the antennas", direction(bearing, glyphs)));
+        add("Height", height(source, screen));
+        add("Bearing", format!("{}, from the middle of the antennas", direction(bearing, screen)));
     }
     let others: Vec<String> = source.alternatives.iter().filter_map(other_place).take(MOST_PLACES).collect();
     if !others.is_empty() {
@@ -39,7 +39,7 @@ pub(super) fn rows(source: &SourceResult, glyphs: Glyphs) -> Vec<(String, String
     rows
 }
 
-fn height(source: &SourceResult, glyphs: Glyphs) -> String {
+fn height(source: &SourceResult, screen: Screen) -> String {
     let region = &source.region;
     let [low, high] = [region.min_m[2], region.max_m[2]].map(metres);
     if region.area_m2.is_some() {
@@ -51,7 +51,7 @@ fn height(source: &SourceResult, glyphs: Glyphs) -> String {
             format!(
                 "{} {} {} m (one sigma); ",
                 metres(source.position_m[2]),
-                glyphs.plus_minus,
+                screen.plus_minus,
                 metres(sigma_m)
             )
         }
@@ -65,10 +65,10 @@ fn height(source: &SourceResult, glyphs: Glyphs) -> String {
 }
 
 /// Bearing and, in space, elevation.
-fn direction(bearing: &Bearing, glyphs: Glyphs) -> String {
-    let azimuth = angle(bearing.azimuth_deg, bearing.azimuth_sigma_deg, glyphs);
+fn direction(bearing: &Bearing, screen: Screen) -> String {
+    let azimuth = angle(bearing.azimuth_deg, bearing.azimuth_sigma_deg, screen);
     let above = if bearing.elevation_deg < 0.0 { "down" } else { "up" };
-    let elevation = angle(bearing.elevation_deg.abs(), bearing.elevation_sigma_deg, glyphs);
+    let elevation = angle(bearing.elevation_deg.abs(), bearing.elevation_sigma_deg, screen);
     format!("{azimuth} from north, {elevation} {above}")
 }
 

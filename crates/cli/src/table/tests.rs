@@ -5,8 +5,8 @@ use arcstead::documents::{
     Inputs, LocateDocument, Program, Region, RejectedCapture, SourceResult, Statement, Verdict,
 };
 
-use super::Glyphs;
-use super::layout::WIDTH;
+use super::Screen;
+use super::layout::{self, Side};
 
 fn source() -> SourceResult {
     SourceResult {
@@ -107,17 +107,17 @@ fn document(sources: Vec<SourceResult>) -> LocateDocument {
 
 /// The table in both alphabets, with all there is; checked to fit, and given without emphasis.
 fn table(document: &LocateDocument) -> String {
-    for glyphs in [Glyphs::UNICODE, Glyphs::ASCII] {
+    for screen in [Screen::UNICODE, Screen::ASCII] {
         for verbose in [true, false] {
-            let text = plain(&super::locate::text(document, glyphs, verbose));
+            let text = plain(&super::locate::text(document, screen, verbose));
             for line in text.lines() {
-                assert!(line.chars().count() <= usize::from(WIDTH), "too wide: {line}");
+                assert!(line.chars().count() <= usize::from(screen.width), "too wide: {line}");
                 assert_eq!(line.trim_end(), line);
             }
-            assert!(glyphs == Glyphs::UNICODE || text.is_ascii(), "{text}");
+            assert!(screen == Screen::UNICODE || text.is_ascii(), "{text}");
         }
     }
-    plain(&super::locate::text(document, Glyphs::UNICODE, false))
+    plain(&super::locate::text(document, Screen::UNICODE, false))
 }
 
 fn plain(text: &str) -> String {
@@ -284,10 +284,33 @@ fn captures_one_by_one() {
 }
 
 #[test]
+fn on_a_narrow_terminal_words_are_broken_to_its_width() {
+    let text = "Words that are long enough to be broken into several lines of any terminal, narrow or not.";
+    for columns in [40, 50, 66] {
+        let screen = Screen::UNICODE.of_columns(Some(columns));
+        let rows = [vec![text.to_owned(), "1.25".to_owned()]];
+        for told in [
+            layout::headline(text, screen),
+            layout::paragraph(text, screen),
+            layout::labelled(&[("Label".to_owned(), text.to_owned())], screen),
+            layout::bullets(&[text.to_owned()], screen),
+            layout::columns(&[("Words", Side::Left), ("Number", Side::Right)], &rows, screen),
+        ] {
+            let told = plain(&told);
+            let widest = told.lines().map(|line| line.chars().count()).max().unwrap();
+            assert!(
+                widest <= usize::from(columns) && widest + 14 > usize::from(columns),
+                "{columns}:\n{told}"
+            );
+        }
+    }
+}
+
+#[test]
 fn a_name_from_a_file_cannot_steer_the_terminal() {
     let mut source = source();
     source.verdict.assets = vec!["\x1b[2Jhidden".into()];
-    let text = super::locate::text(&document(vec![source]), Glyphs::ASCII, false);
+    let text = super::locate::text(&document(vec![source]), Screen::ASCII, false);
     assert!(!text.contains("\x1b[2J") && text.contains("?[2Jhidden"), "{text}");
 }
 

@@ -19,7 +19,8 @@ pub struct Section {
 pub enum BandPassError {
     /// The edges are not `0 < low < high < half the sample rate`.
     #[error(
-        "a band from {low_hz} Hz to {high_hz} Hz at {sample_rate_hz} samples a second; expected 0 < low < high < half the sample rate"
+        "a band from {} to {} MHz at {} million samples a second; expected 0 < low < high < {} MHz, half the sample rate",
+        low_hz / 1e6, high_hz / 1e6, sample_rate_hz / 1e6, sample_rate_hz / 2e6
     )]
     Band {
         /// Lower edge given, in hertz.
