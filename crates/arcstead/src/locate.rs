@@ -185,7 +185,7 @@ fn combined_source(
             told.counts.used = members.len();
             told.counts.stray = usable.len() - members.len();
             let mut source = source(site, geometry, &members, &fix);
-            if whole.enlargement > SCATTERED {
+            if is_scattered(geometry, &whole) {
                 source.verdict.statement = Statement::CannotTell;
                 source.verdict.assets.clear();
                 source.flags.push(Flag::Scattered);
@@ -200,6 +200,25 @@ fn combined_source(
             told.cautions.push(no_place(site, geometry, &whole, members.len(), &error));
         }
     }
+}
+
+/// Whether the captures scatter far beyond their sigmas, by more than delays, responses and survey leave open anyway: scatter of
+/// picoseconds about strong pulses hides no second source.
+fn is_scattered(geometry: &solver::Site, whole: &Combined) -> bool {
+    let speed = geometry.air.speed_m_per_s;
+    let systematic_s2: f64 = whole
+        .arrivals
+        .antennas
+        .iter()
+        .map(|&index| {
+            let antenna = &geometry.antennas[index];
+            let survey_m2 = antenna.position_sigma.variance_range_m2().1;
+            antenna.delay_sigma_s.powi(2) + antenna.response_sigma_s.powi(2) + survey_m2 / (speed * speed)
+        })
+        .sum();
+    // The combined covariance is that of one capture over their number, and holds the scatter already.
+    let scatter_s2 = whole.arrivals.random_covariance_s2.trace() * whole.captures as f64;
+    whole.enlargement > SCATTERED && scatter_s2 > systematic_s2
 }
 
 /// Why captures that agree with each other fit no place.
@@ -350,5 +369,139 @@ fn flag_name(flag: solver::Flag) -> Flag {
         solver::Flag::RegionTouchesSearchEdge => Flag::RegionTouchesSearchEdge,
         // A flag of the solver this document has no name for would be the worst kind to lose: it is told as the gravest.
         _ => Flag::PoorFit,
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use crate::documents::Document;
+    use crate::visit::Unwatched;
+    use arcstead_core::ChannelFlags;
+    use nalgebra::{DMatrix, Vector3};
+
+    use crate::arrivals_table::AntennaArrival;
+
+    /// Five antennas about a yard with three posts in a row; invented.
+    fn site() -> Site {
+        let mut text = "schema = 1\n[site]\nname = \"Test Yard\"\n".to_owned();
+        let places =
+            [[0.0, 0.0, 2.0], [16.0, 1.0, 4.5], [15.0, 14.0, 1.5], [1.0, 13.0, 5.0], [8.0, -3.0, 3.0]];
+        for (index, [x, y, z]) in places.into_iter().enumerate() {
+            let number = index + 1;
+            text += &format!(
+                "[[antenna]]\nname = \"A{number}\"\nchannel = {number}\nposition_m = [{x}, {y}, {z}]\n"
+            );
+        }
+        for (name, x) in [("A", 6.0), ("B", 6.6), ("C", 7.2)] {
+            text += &format!(
+                "[[asset]]\nname = \"Post {name}\"\nfrom_m = [{x}, 7.0, 3.0]\nto_m = [{x}, 7.0, 5.0]\nradius_m = 0.1\n"
+            );
+        }
+        Site::parse(&text, "site.toml").unwrap()
+    }
+
+    /// Captures of sources at these places, `sigma_s` stated, errors of it from a fixed list.
+    fn visit(site: &Site, sources: &[Vector3<f64>], sigma_s: f64) -> TimedVisit {
+        let mut state = 9_u64;
+        let mut error = || {
+            // Near enough to a normal number (a linear congruential generator; from memory).
+            (0..12)
+                .map(|_| {
+                    state = state.wrapping_mul(6_364_136_223_846_793_005).wrapping_add(1);
+                    (state >> 40) as f64 / f64::from(1 << 24) - 0.5
+                })
+                .sum::<f64>()
+        };
+        let antennas = &site.geometry.antennas;
+        let arrivals: Vec<CaptureArrivals> = sources
+            .iter()
+            .enumerate()
+            .map(|(number, source_m)| CaptureArrivals {
+                capture: format!("shot_{number}"),
+                time: None,
+                stance: crate::site::MAIN_STANCE.into(),
+                antennas: (0..antennas.len())
+                    .map(|antenna| {
+                        let way_m = (antennas[antenna].position_m - source_m).norm();
+                        AntennaArrival {
+                            antenna,
+                            arrival_s: Some(way_m / site.geometry.air.speed_m_per_s + sigma_s * error()),
+                            sigma_s: Some(sigma_s),
+                            snr_db: None,
+                            flags: ChannelFlags::default(),
+                        }
+                    })
+                    .collect(),
+                covariance_s2: DMatrix::identity(antennas.len(), antennas.len()) * sigma_s.powi(2),
+            })
+            .collect();
+        TimedVisit { captures: arrivals.len(), arrivals, ..TimedVisit::default() }
+    }
+
+    fn told(visit: &TimedVisit, site: &Site) -> LocateDocument {
+        let document = locate(site, visit, &LocateOptions::default(), &Unwatched).unwrap();
+        document.to_json().unwrap();
+        document
+    }
+
+    const POST_A: Vector3<f64> = Vector3::new(6.0, 7.0, 4.0);
+    const POST_C: Vector3<f64> = Vector3::new(7.2, 7.0, 4.0);
+
+    #[test]
+    fn one_source_is_named() {
+        let site = site();
+        let document = told(&visit(&site, &[POST_A; 20], 1e-10), &site);
+        assert_eq!(document.sources[0].verdict.assets, ["Post A"]);
+        assert!(!document.sources[0].flags.contains(&Flag::Scattered));
+    }
+
+    #[test]
+    fn of_two_sources_in_turn_the_silent_post_between_them_is_never_named() {
+        let site = site();
+        let turns: Vec<_> = (0..40).map(|k| if k % 2 == 0 { POST_A } else { POST_C }).collect();
+        for sigma_s in [1e-10, 3e-10, 6e-10, 1e-9] {
+            let document = told(&visit(&site, &turns, sigma_s), &site);
+            let source = &document.sources[0];
+            assert_ne!(source.verdict.assets, ["Post B"], "{sigma_s}: {:?}", source.flags);
+            let strays = document.captures.stray;
+            assert!(strays > 10 || source.flags.contains(&Flag::Scattered), "{sigma_s}: {strays} strays");
+        }
+    }
+
+    #[test]
+    fn scatter_that_hides_nothing_is_no_reason_to_be_silent() {
+        // Picoseconds stated, ten times as many found: still nothing beside delays of 100 ps.
+        let site = site();
+        let mut visit = visit(&site, &[POST_A; 20], 2e-11);
+        for capture in &mut visit.arrivals {
+            capture.covariance_s2 /= 100.0;
+            capture.antennas.iter_mut().for_each(|row| row.sigma_s = Some(2e-12));
+        }
+        let document = told(&visit, &site);
+        assert_eq!(document.sources[0].verdict.assets, ["Post A"]);
+    }
+
+    #[test]
+    fn two_captures_that_disagree_name_nobody() {
+        let site = site();
+        let document = told(&visit(&site, &[POST_A, POST_C + Vector3::new(3.0, 0.0, 0.0)], 1e-10), &site);
+        assert!(document.sources.is_empty());
+        assert_eq!(document.captures.stray, 2);
+    }
+
+    #[test]
+    fn too_few_arrivals_are_told_with_what_is_missing() {
+        let site = site();
+        let mut visit = visit(&site, &[POST_A; 2], 1e-10);
+        for row in visit.arrivals[1].antennas.iter_mut().take(3) {
+            (row.arrival_s, row.sigma_s) = (None, None);
+        }
+        let document = told(&visit, &site);
+        assert_eq!(document.sources[0].captures, 1);
+        assert_eq!(
+            document.captures.rejected[0].reason,
+            "pulse on 2 of 5 antennas; a place needs at least 4"
+        );
     }
 }

@@ -95,8 +95,7 @@ fn one_source(
     text += &layout::labelled(&rows, screen);
 
     text += "\n";
-    let unreliable = source.flags.contains(&Flag::PoorFit) || source.flags.contains(&Flag::Hidden);
-    let asset = if unreliable { "Asset (unreliable ranking)" } else { "Asset" };
+    let asset = if place::unreliable(source) { "Asset (unreliable ranking)" } else { "Asset" };
     text += &layout::columns(
         &[(asset, Side::Left), ("Probability", Side::Right)],
         &verdict::ranking(source),
@@ -116,6 +115,9 @@ fn captures_of(document: &LocateDocument, index: usize, source: &SourceResult) -
     let (site, all) = (site_of(document), captures_told(document));
     match document.sources.len() {
         1 if all == 1 => format!("{site}: from one capture."),
+        1 if source.flags.contains(&Flag::Scattered) => {
+            format!("{site}: {} of {all} captures are alike, but not within their errors.", source.captures)
+        }
         1 => format!("{site}: {} of {all} captures agree on this source.", source.captures),
         sources => {
             format!("{site}: source {} of {sources}, {} of {all} captures.", index + 1, source.captures)

@@ -15,6 +15,11 @@ pub(super) fn rows(source: &SourceResult, screen: Screen) -> Vec<(String, String
     let mut rows = Vec::new();
     let mut add = |label: &str, text: String| rows.push((label.to_owned(), text));
     let (bearing, region) = (&source.bearing, &source.region);
+    if unreliable(source) {
+        // Neither error nor bearing of a place that is not believed means anything.
+        add("Least bad place", format!("{}; do not go by it", point(source.position_m)));
+        return rows;
+    }
     if source.flags.contains(&Flag::RangeUndetermined) {
         add("Direction", format!("{}, seen from {}", direction(bearing, screen), point(bearing.from_m)));
         add("Distance", distance(bearing, region.confidence));
@@ -37,6 +42,11 @@ pub(super) fn rows(source: &SourceResult, screen: Screen) -> Vec<(String, String
         );
     }
     rows
+}
+
+/// Whether the place told is one that is not believed.
+pub(super) fn unreliable(source: &SourceResult) -> bool {
+    [Flag::PoorFit, Flag::Hidden, Flag::Scattered].iter().any(|flag| source.flags.contains(flag))
 }
 
 fn height(source: &SourceResult, screen: Screen) -> String {

@@ -5,6 +5,8 @@ use arcstead::documents::{Flag, SourceResult, Statement};
 use super::figures::percent;
 use super::words::either;
 
+/// From this probability on it would be stated, were there an arrival to check it by.
+const ALMOST_SURE: f64 = 0.8;
 /// Least probability of what is named beside a statement.
 const WORTH_NAMING: f64 = 0.01;
 /// Most hypotheses that are named beside a statement.
@@ -35,6 +37,9 @@ pub(super) fn headline(source: &SourceResult) -> String {
         }
         _ if source.flags.contains(&Flag::Hidden) => {
             "Cannot tell: only a place hidden from some antennas explains the arrivals".into()
+        }
+        _ if source.elsewhere_probability >= ALMOST_SURE => {
+            "Cannot tell: on none of the listed assets, if delays and positions are right".into()
         }
         _ => match candidates(source, &[]).as_slice() {
             [] | [_] => "Cannot tell on which asset it is".into(),
@@ -69,7 +74,7 @@ pub(super) fn other_candidates(source: &SourceResult) -> Option<(String, String)
             &candidates(source, &[ELSEWHERE.to_owned()]),
             "none of the assets is above 1 %",
         ),
-        _ if source.flags.contains(&Flag::PoorFit) || source.flags.contains(&Flag::Hidden) => {
+        _ if super::place::unreliable(source) => {
             row("Unreliable", &candidates(source, &[]), "nothing is above 1 %")
         }
         _ => None,
