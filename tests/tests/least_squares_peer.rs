@@ -7,7 +7,8 @@ use arcstead_solver::least_squares::{Ended, refine};
 use arcstead_solver::likelihood::{Evaluator, Likelihood};
 use arcstead_solver::nalgebra::storage::Owned;
 use arcstead_solver::nalgebra::{DVector, Dyn, Matrix, OMatrix, U4, Vector3, Vector4};
-use arcstead_solver::{Air, Antenna, Arrivals, PositionSigma, Priors, SearchBox, Site};
+use arcstead_solver::{Arrivals, SearchBox};
+use arcstead_tests::bare_site;
 use levenberg_marquardt::{LeastSquaresProblem, LevenbergMarquardt};
 use rand::{RngExt, SeedableRng};
 use rand_chacha::ChaCha8Rng;
@@ -81,23 +82,8 @@ fn both_end_at_the_same_place() {
                 (source - antenna).norm() / SPEED + sigma_s * error
             })
             .collect();
-        let site = Site {
-            antennas: antennas
-                .iter()
-                .map(|&position_m| Antenna {
-                    name: String::new(),
-                    position_m,
-                    position_sigma: PositionSigma::Isotropic(0.0),
-                    delay_sigma_s: 0.0,
-                    response_sigma_s: 0.0,
-                })
-                .collect(),
-            assets: vec![],
-            obstacles: vec![],
-            air: Air { speed_m_per_s: SPEED },
-            search: SearchBox { min_m: Vector3::repeat(-50.0), max_m: Vector3::repeat(50.0) },
-            priors: Priors::default(),
-        };
+        let search = SearchBox { min_m: Vector3::repeat(-50.0), max_m: Vector3::repeat(50.0) };
+        let site = bare_site(&antennas, SPEED, search);
         let likelihood = Likelihood::new(&site, &Arrivals::independent(&times, &sigma_s)).unwrap();
         let start = source + Vector3::new(1.0, -1.0, 0.5);
         let ours = refine(&mut Evaluator::new(&likelihood), &site.search, &start).unwrap();

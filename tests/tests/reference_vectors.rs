@@ -10,10 +10,8 @@ use arcstead_core::{ButterworthBandPass, GeneralisedCorrelation, Weighting};
 use arcstead_solver::least_squares::refine;
 use arcstead_solver::likelihood::{Evaluator, Likelihood};
 use arcstead_solver::nalgebra::{DMatrix, DVector, Vector3};
-use arcstead_solver::{
-    Air, Antenna, Arrivals, PositionSigma, Priors, SearchBox, Site, chi_square_exceedance,
-    chi_square_quantile, covariance,
-};
+use arcstead_solver::{Air, Arrivals, SearchBox, chi_square_exceedance, chi_square_quantile, covariance};
+use arcstead_tests::bare_site;
 use toml::{Table, Value};
 
 fn vectors() -> Table {
@@ -118,26 +116,9 @@ fn least_squares_positions() {
         let expected = numbers(&table["position_m"]);
         let unknowns = expected.len();
         let z = if unknowns == 3 { 100.0 } else { 0.0 };
-        let site = Site {
-            antennas: places
-                .iter()
-                .map(|&position_m| Antenna {
-                    name: String::new(),
-                    position_m,
-                    position_sigma: PositionSigma::Isotropic(0.0),
-                    delay_sigma_s: 0.0,
-                    response_sigma_s: 0.0,
-                })
-                .collect(),
-            assets: vec![],
-            obstacles: vec![],
-            air: Air::from_refractivity(315.0),
-            search: SearchBox {
-                min_m: Vector3::new(-100.0, -100.0, -z),
-                max_m: Vector3::new(100.0, 100.0, z),
-            },
-            priors: Priors::default(),
-        };
+        let search =
+            SearchBox { min_m: Vector3::new(-100.0, -100.0, -z), max_m: Vector3::new(100.0, 100.0, z) };
+        let site = bare_site(&places, Air::from_refractivity(315.0).speed_m_per_s, search);
         let covariance_ns2 = rows(&table["covariance_ns2"]);
         let arrivals = Arrivals {
             antennas: (0..n).collect(),

@@ -7,30 +7,12 @@ use arcstead_solver::closed_form::roots;
 use arcstead_solver::least_squares::{Ended, refine};
 use arcstead_solver::likelihood::{Evaluator, Likelihood};
 use arcstead_solver::nalgebra::{DMatrix, Vector3};
-use arcstead_solver::{
-    Air, Antenna, Arrivals, Ellipse, PositionSigma, Priors, SearchBox, Site, covariance, locate,
-};
+use arcstead_solver::{Arrivals, Ellipse, SearchBox, Site, covariance, locate};
+use arcstead_tests::bare_site;
 
-/// A site without systematic errors: what counts is the timing given with the arrivals.
 fn site(antennas: &[[f64; 3]], speed: f64, min: [f64; 3], max: [f64; 3]) -> Site {
-    Site {
-        antennas: antennas
-            .iter()
-            .enumerate()
-            .map(|(i, &position)| Antenna {
-                name: format!("A{}", i + 1),
-                position_m: position.into(),
-                position_sigma: PositionSigma::Isotropic(0.0),
-                delay_sigma_s: 0.0,
-                response_sigma_s: 0.0,
-            })
-            .collect(),
-        assets: vec![],
-        obstacles: vec![],
-        air: Air { speed_m_per_s: speed },
-        search: SearchBox { min_m: min.into(), max_m: max.into() },
-        priors: Priors::default(),
-    }
+    let places: Vec<Vector3<f64>> = antennas.iter().map(|&place| place.into()).collect();
+    bare_site(&places, speed, SearchBox { min_m: min.into(), max_m: max.into() })
 }
 
 /// Least squares from a start, and the likelihood's own account of the answer.

@@ -1,5 +1,6 @@
 //! What the reader of a result must know beside it, in sentences.
 
+use arcstead_solver::least_squares::Ended;
 use arcstead_solver::{Combined, Fix, ImpossibleDelay, SLACK_SIGMAS};
 
 use crate::arrivals_table::CaptureArrivals;
@@ -47,6 +48,11 @@ pub(crate) fn of_source(
         ));
     }
     cautions.extend(of_channels(site, captures));
+    if fix.ended != Ended::Converged {
+        cautions.push(
+            "The least squares did not settle: the position is the best point seen, no minimum.".into(),
+        );
+    }
     if !fix.resolved {
         cautions.push(
             "The search was stopped before its cells were fine; region and probabilities are coarse.".into(),

@@ -27,6 +27,7 @@ mod provenance;
 pub mod site;
 mod timer;
 mod visit;
+pub mod whole_file;
 
 pub use arcstead_core as core;
 pub use arcstead_solver as solver;

@@ -213,7 +213,7 @@ fn is_scattered(geometry: &solver::Site, whole: &Combined) -> bool {
         .map(|&index| {
             let antenna = &geometry.antennas[index];
             let survey_m2 = antenna.position_sigma.variance_range_m2().1;
-            antenna.delay_sigma_s.powi(2) + antenna.response_sigma_s.powi(2) + survey_m2 / (speed * speed)
+            antenna.chain_variance_s2() + survey_m2 / (speed * speed)
         })
         .sum();
     // The combined covariance is that of one capture over their number, and holds the scatter already.

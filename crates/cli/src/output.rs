@@ -1,7 +1,9 @@
 //! The result: to stdout, or to a file that appears whole or not at all.
 
-use std::io::{ErrorKind, Write};
+use std::io::ErrorKind;
 use std::path::{Path, PathBuf};
+
+use arcstead::whole_file::{self, folder_of};
 
 use crate::console::Console;
 use crate::failure::Failure;
@@ -78,7 +80,7 @@ impl Output {
                 Err(error) if error.kind() == ErrorKind::BrokenPipe => Ok(()),
                 written => written.map_err(Failure::Stdout),
             },
-            Some(path) => write_file(path, text.as_bytes()).map_err(|source| Failure::Write {
+            Some(path) => whole_file::write(path, text.as_bytes()).map_err(|source| Failure::Write {
                 path: path.clone(),
                 source: without_temporary_name(source),
             }),
@@ -91,37 +93,11 @@ pub(crate) fn without_temporary_name(error: std::io::Error) -> std::io::Error {
     if error.raw_os_error().is_some() { error } else { error.kind().into() }
 }
 
-/// A file that was there is replaced in one step; a device or pipe is written as it is, never replaced.
-fn write_file(path: &Path, bytes: &[u8]) -> std::io::Result<()> {
-    if std::fs::metadata(path).is_ok_and(|found| !found.is_file()) {
-        return std::fs::OpenOptions::new().write(true).open(path)?.write_all(bytes);
-    }
-    let mut builder = tempfile::Builder::new();
-    builder.prefix(".arcstead-");
-    #[cfg(unix)]
-    let everybody = std::os::unix::fs::PermissionsExt::from_mode(0o666);
-    #[cfg(unix)]
-    // Less the process's mask; by default only the owner could read a temporary file.
-    builder.permissions(everybody);
-    let mut file = builder.tempfile_in(folder_of(path))?;
-    // A file that is replaced stays open to those it was open to.
-    if let Ok(replaced) = std::fs::metadata(path) {
-        file.as_file().set_permissions(replaced.permissions())?;
-    }
-    file.write_all(bytes)?;
-    file.as_file().sync_all()?;
-    file.persist(path).map_err(|error| error.error)?;
-    Ok(())
-}
-
-fn folder_of(path: &Path) -> &Path {
-    path.parent().filter(|parent| !parent.as_os_str().is_empty()).unwrap_or(Path::new("."))
-}
-
 #[cfg(test)]
 mod tests {
     use super::*;
     use crate::arguments::{Color, TalkArguments};
+    use std::io::Write;
 
     struct Closed;
 

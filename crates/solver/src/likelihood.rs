@@ -99,7 +99,7 @@ impl Likelihood {
             random_m2: symmetric(&arrivals.random_covariance_s2) * speed_m_per_s.powi(2),
             chain_m2: chosen
                 .iter()
-                .map(|a| (a.delay_sigma_s.powi(2) + a.response_sigma_s.powi(2)) * speed_m_per_s.powi(2))
+                .map(|antenna| antenna.chain_variance_s2() * speed_m_per_s.powi(2))
                 .collect(),
             late_m: site.priors.late_scale_s * speed_m_per_s,
             prisms: site.obstacles.iter().flat_map(crate::obstacle::Obstacle::convex_pieces).collect(),

@@ -77,6 +77,14 @@ pub struct Antenna {
     pub response_sigma_s: f64,
 }
 
+impl Antenna {
+    /// Variance of what delay and response leave open, in s^2: the systematic part of an arrival that is not the survey's.
+    #[must_use]
+    pub fn chain_variance_s2(&self) -> f64 {
+        self.delay_sigma_s.powi(2) + self.response_sigma_s.powi(2)
+    }
+}
+
 /// Standard deviation of an antenna's position.
 #[derive(Debug, Clone, Copy, PartialEq)]
 pub enum PositionSigma {

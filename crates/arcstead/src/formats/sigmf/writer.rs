@@ -12,6 +12,7 @@ use super::metadata::{EXTENSION, VOLTS_PER_COUNT};
 use crate::CaptureTime;
 use crate::formats::limits::{MAX_CHANNELS, MAX_SAMPLE_RATE_HZ, MIN_SAMPLE_RATE_HZ};
 use crate::formats::regular_file::file_name;
+use crate::whole_file::temporary_beside;
 
 /// How samples lie in the file; little-endian.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
@@ -175,7 +176,7 @@ impl SigmfWriter {
             path.with_file_name(format!("{name}.sigmf-meta")),
             path.with_file_name(format!("{name}.sigmf-data")),
         );
-        let file = BufWriter::new(temporary_beside(&data)?);
+        let file = BufWriter::new(temporary(&data)?);
         Ok(Self { meta, data, settings, file, segments: Vec::new(), samples_written: 0, bytes: Vec::new() })
     }
 
@@ -214,7 +215,7 @@ impl SigmfWriter {
     /// meta.
     pub fn finish(mut self) -> Result<PathBuf, SigmfWriteError> {
         let (meta, data) = (self.meta.clone(), self.data.clone());
-        let mut meta_file = temporary_beside(&meta)?;
+        let mut meta_file = temporary(&meta)?;
         let mut text = serde_json::to_string_pretty(&self.document())
             .map_err(|error| write_error(&meta, error.into()))?;
         text.push('\n');
@@ -301,15 +302,6 @@ fn write_error(path: &Path, source: std::io::Error) -> SigmfWriteError {
     SigmfWriteError::Io { path: path.to_owned(), source }
 }
 
-/// A file of a temporary name in the folder of `path`, with the permissions of any new file.
-fn temporary_beside(path: &Path) -> Result<NamedTempFile, SigmfWriteError> {
-    let folder = path.parent().filter(|parent| !parent.as_os_str().is_empty()).unwrap_or(Path::new("."));
-    let mut builder = tempfile::Builder::new();
-    builder.prefix(".arcstead-");
-    #[cfg(unix)]
-    let everybody = std::os::unix::fs::PermissionsExt::from_mode(0o666);
-    #[cfg(unix)]
-    // Less the process's mask; by default only the owner could read a temporary file.
-    builder.permissions(everybody);
-    builder.tempfile_in(folder).map_err(|source| write_error(path, source))
+fn temporary(path: &Path) -> Result<NamedTempFile, SigmfWriteError> {
+    temporary_beside(path).map_err(|source| write_error(path, source))
 }
